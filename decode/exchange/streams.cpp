@@ -1,0 +1,156 @@
+#include "decode/exchange/streams.h"
+
+#include <fcntl.h>
+#include <sys/stat.h>
+#include <unistd.h>
+
+#include <algorithm>
+#include <cerrno>
+#include <cstdio>
+#include <cstring>
+
+#include "polar/digest.h"
+#include "polar/error.h"
+
+namespace frostline {
+namespace {
+
+constexpr std::size_t kBufferBytes = std::size_t{1} << 20;
+
+std::string reason(int error) { return std::strerror(error); }
+
+// A name beside the target that no other process uses.
+std::string temporary_name(const std::string& path) {
+  std::uint8_t random[6];
+  randombytes_buf(random, sizeof random);
+  return path + ".part-" + to_hex(Span<const std::uint8_t>(random, sizeof random));
+}
+
+}  // namespace
+
+std::size_t MemorySource::read(Span<std::uint8_t> bytes) {
+  const std::size_t count = std::min(bytes.size(), bytes_.size() - next_);
+  std::copy_n(bytes_.data() + next_, count, bytes.data());
+  next_ += count;
+  return count;
+}
+
+FileSource::FileSource(std::string path)
+    : path_(std::move(path)), descriptor_(::open(path_.c_str(), O_RDONLY | O_CLOEXEC)) {
+  if (descriptor_ < 0) throw InputError("cannot read '" + path_ + "': " + reason(errno));
+  struct stat status {};
+  if (::fstat(descriptor_, &status) == 0 && S_ISDIR(status.st_mode)) {
+    ::close(descriptor_);
+    throw InputError("cannot read '" + path_ + "': it is a folder");
+  }
+  if (S_ISREG(status.st_mode)) size_ = static_cast<std::uint64_t>(status.st_size);
+}
+
+FileSource::~FileSource() { ::close(descriptor_); }
+
+std::size_t FileSource::read(Span<std::uint8_t> bytes) {
+  std::size_t done = 0;
+  while (done < bytes.size()) {
+    const ssize_t got = ::read(descriptor_, bytes.data() + done, bytes.size() - done);
+    if (got < 0 && errno == EINTR) continue;
+    if (got < 0) throw InputError("cannot read '" + path_ + "': " + reason(errno));
+    if (got == 0) break;
+    done += static_cast<std::size_t>(got);
+  }
+  return done;
+}
+
+void FileSource::read_at(std::uint64_t offset, Span<std::uint8_t> bytes) const {
+  std::size_t done = 0;
+  while (done < bytes.size()) {
+    const ssize_t got = ::pread(descriptor_, bytes.data() + done, bytes.size() - done,
+                                static_cast<off_t>(offset + done));
+    if (got < 0 && errno == EINTR) continue;
+    if (got < 0) throw InputError("cannot read '" + path_ + "': " + reason(errno));
+    if (got == 0) throw InputError("'" + path_ + "' became shorter while it was read");
+    done += static_cast<std::size_t>(got);
+  }
+}
+
+std::string read_file(const std::string& path) {
+  FileSource source(path);
+  std::string contents;
+  std::vector<std::uint8_t> buffer(kBufferBytes);
+  while (const std::size_t got = source.read(Span<std::uint8_t>(buffer))) {
+    contents.append(reinterpret_cast<const char*>(buffer.data()), got);
+  }
+  return contents;
+}
+
+FileSink::FileSink(std::string path, FileAccess access, FileReplace replace)
+    : path_(std::move(path)), replace_(replace) {
+  const mode_t mode = access == FileAccess::secret ? 0600 : 0666;
+  struct stat status {};
+  const bool exists = ::stat(path_.c_str(), &status) == 0;
+  if (exists && S_ISDIR(status.st_mode)) fail(EISDIR);
+  if (exists && !S_ISREG(status.st_mode)) {
+    descriptor_ = ::open(path_.c_str(), O_WRONLY | O_CLOEXEC);
+    if (descriptor_ < 0) fail(errno);
+    return;
+  }
+  if (exists && replace_ == FileReplace::refuse_if_there) fail(EEXIST);
+  temporary_ = temporary_name(path_);
+  descriptor_ = ::open(temporary_.c_str(), O_WRONLY | O_CREAT | O_EXCL | O_CLOEXEC, mode);
+  if (descriptor_ < 0) {
+    const int error = errno;
+    temporary_.clear();
+    fail(error);
+  }
+}
+
+FileSink::~FileSink() {
+  if (descriptor_ >= 0) ::close(descriptor_);
+  if (!temporary_.empty()) ::unlink(temporary_.c_str());
+}
+
+void FileSink::fail(int error) const {
+  throw InputError("cannot write '" + path_ + "': " + reason(error));
+}
+
+void FileSink::write(Span<const std::uint8_t> bytes) {
+  buffer_.insert(buffer_.end(), bytes.begin(), bytes.end());
+  if (buffer_.size() >= kBufferBytes) flush();
+}
+
+void FileSink::write(std::string_view text) { write(bytes_of(text)); }
+
+void FileSink::flush() {
+  std::size_t done = 0;
+  while (done < buffer_.size()) {
+    const ssize_t put = ::write(descriptor_, buffer_.data() + done, buffer_.size() - done);
+    if (put < 0 && errno == EINTR) continue;
+    if (put < 0) fail(errno);
+    done += static_cast<std::size_t>(put);
+  }
+  sodium_memzero(buffer_.data(), buffer_.size());
+  buffer_.clear();
+}
+
+void FileSink::finish() {
+  if (descriptor_ < 0) return;
+  flush();
+  const int closed = ::close(descriptor_);
+  descriptor_ = -1;
+  if (closed != 0) fail(errno);
+}
+
+void FileSink::commit() {
+  finish();
+  if (temporary_.empty()) return;
+  // link() instead of rename() where the target must not be there: no window between a check and
+  // the act.
+  if (replace_ == FileReplace::refuse_if_there) {
+    if (::link(temporary_.c_str(), path_.c_str()) != 0) fail(errno);
+    ::unlink(temporary_.c_str());
+  } else if (::rename(temporary_.c_str(), path_.c_str()) != 0) {
+    fail(errno);
+  }
+  temporary_.clear();
+}
+
+}  // namespace frostline
