@@ -209,8 +209,7 @@ std::string bits_to_hex(const BitString& bits) {
 BitString bits_from_hex(std::string_view hex, std::size_t bits, std::string_view name) {
   if (hex.size() != (bits + 3) / 4) {
     throw InputError(std::string(name) + ": " + std::to_string(hex.size()) +
-                     " hexadecimal digits where " + std::to_string((bits + 3) / 4) +
-                     " are needed");
+                     " hexadecimal digits where " + std::to_string((bits + 3) / 4) + " are needed");
   }
   BitString result(bits);
   for (std::size_t k = 0; k < hex.size(); ++k) {

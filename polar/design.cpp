@@ -105,8 +105,7 @@ Code code_from_json(const Json& root, const std::string& name) {
   if (frozen.frozen_count() != get_unsigned(root, "frozen_count", name)) {
     throw InputError(name + ": frozen_count is " +
                      std::to_string(get_unsigned(root, "frozen_count", name)) +
-                     " but the mask freezes " + std::to_string(frozen.frozen_count()) +
-                     " indices");
+                     " but the mask freezes " + std::to_string(frozen.frozen_count()) + " indices");
   }
   const std::uint64_t width = get_unsigned(root, "check_bits", name);
   require_check_width(static_cast<unsigned>(std::min<std::uint64_t>(width, 1000)));
@@ -226,8 +225,8 @@ DesignLeakage design_leakage(const Design& design) {
   leakage.efficiency = static_cast<double>(leakage.bits) / entropy;
   leakage.syndrome_efficiency = static_cast<double>(design.code.frozen.frozen_count()) / entropy;
   if (design.predicted.fer && *design.predicted.fer > 0 && *design.predicted.fer < 1) {
-    const FiniteLengthLimit limit = finite_length_limit(design.code.block_length().bits(),
-                                                        design.qber, *design.predicted.fer);
+    const FiniteLengthLimit limit =
+        finite_length_limit(design.code.block_length().bits(), design.qber, *design.predicted.fer);
     leakage.limit_bits = limit.bits;
     leakage.limit_efficiency = limit.efficiency;
   }

@@ -43,17 +43,17 @@ struct Design {
   Arithmetic arithmetic;
   std::optional<std::vector<std::uint32_t>> reveal_order;  // open indices, first to reveal first
   Prediction predicted;
-  Parameters options;                // provenance: what was asked
+  Parameters options;                 // provenance: what was asked
   std::optional<std::uint64_t> seed;  // provenance: of the trial, where there was one
 };
 
 // Leakage of one block at the design's QBER, tags not counted.
 struct DesignLeakage {
-  std::uint64_t bits;                        // M + c
-  double efficiency;                         // bits / (N h2(p))
-  double syndrome_efficiency;                // M / (N h2(p))
-  std::optional<std::uint64_t> limit_bits;   // finite-length limit at the predicted FER
-  std::optional<double> limit_efficiency;    // none where no FER in (0, 1) is predicted
+  std::uint64_t bits;                       // M + c
+  double efficiency;                        // bits / (N h2(p))
+  double syndrome_efficiency;               // M / (N h2(p))
+  std::optional<std::uint64_t> limit_bits;  // finite-length limit at the predicted FER
+  std::optional<double> limit_efficiency;   // none where no FER in (0, 1) is predicted
 };
 DesignLeakage design_leakage(const Design& design);
 

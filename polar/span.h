@@ -15,14 +15,12 @@ class Span {
   constexpr Span() = default;
   constexpr Span(T* data, std::size_t size) : data_(data), size_(size) {}
   // From any container with data() and size(), and from Span<U> to Span<const U>.
-  template <typename Container,
-            typename = std::enable_if_t<
-                std::is_convertible_v<decltype(std::declval<Container&>().data()), T*>>>
+  template <typename Container, typename = std::enable_if_t<std::is_convertible_v<
+                                    decltype(std::declval<Container&>().data()), T*>>>
   constexpr Span(Container& container)  // NOLINT: implicit on purpose, as std::span
       : data_(container.data()), size_(container.size()) {}
-  template <typename Container,
-            typename = std::enable_if_t<
-                std::is_convertible_v<decltype(std::declval<const Container&>().data()), T*>>>
+  template <typename Container, typename = std::enable_if_t<std::is_convertible_v<
+                                    decltype(std::declval<const Container&>().data()), T*>>>
   constexpr Span(const Container& container)  // NOLINT
       : data_(container.data()), size_(container.size()) {}
 

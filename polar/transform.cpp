@@ -1,7 +1,7 @@
 // One source for all targets of Google Highway: the file includes itself once for each.
 #undef HWY_TARGET_INCLUDE
 #define HWY_TARGET_INCLUDE "polar/transform.cpp"  // NOLINT
-#include <hwy/foreach_target.h>  // IWYU pragma: keep
+#include <hwy/foreach_target.h>                   // IWYU pragma: keep
 // After foreach_target.
 #include <hwy/highway.h>
 

@@ -76,7 +76,7 @@ class FileSource : public ByteSource {
 // The whole contents of a file that holds no key.
 std::string read_file(const std::string& path);
 
-enum class FileAccess { normal, secret };          // secret: mode 0600
+enum class FileAccess { normal, secret };  // secret: mode 0600
 enum class FileReplace { allowed, refuse_if_there };
 
 class FileSink : public ByteSink {

@@ -1,0 +1,35 @@
+// A command while it runs: the progress line, the clock, and interruption by the user.
+#pragma once
+
+#include <chrono>
+#include <string>
+
+#include "decode/exchange/run_control.h"
+
+namespace frostline::cli {
+
+// Turns SIGINT and SIGTERM into a stop flag while it lives, and shows one progress line with rate
+// and time left on stderr where that is a terminal and quiet is false.
+class RunState {
+ public:
+  // bits_per_block: for the rate that the progress line tells.
+  RunState(std::string label, double bits_per_block, bool quiet);
+  ~RunState();
+  RunState(const RunState&) = delete;
+  RunState& operator=(const RunState&) = delete;
+
+  RunControl control();
+  double seconds() const;
+
+ private:
+  void show(std::uint64_t done, std::uint64_t total);
+
+  std::string label_;
+  double bits_per_block_;
+  bool shows_;
+  bool shown_ = false;
+  std::chrono::steady_clock::time_point start_;
+  std::chrono::steady_clock::time_point last_;
+};
+
+}  // namespace frostline::cli
