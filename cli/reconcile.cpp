@@ -112,11 +112,10 @@ void print_account(const Design& design, const ReconcileSummary& summary, const 
         .row("observed QBER", percent(summary.accepted_qber, 3) +
                                   " in accepted blocks (biased low: bad blocks fail)");
   }
-  const QberEstimate& estimate = summary.all_blocks_qber;
-  if (!estimate.looks_unrelated) {
-    table.row("QBER estimate", percent(estimate.qber, 3) + " over all blocks (" +
-                                   percent(estimate.low, 3) + " to " + percent(estimate.high, 3) +
-                                   ", from the syndromes)");
+  if (const auto& all = summary.all_blocks_qber; all && summary.failed() > 0) {
+    table.row("QBER of all blocks", percent(all->qber, 3) + " (" + percent(all->low, 3) + " to " +
+                                        percent(all->high, 3) +
+                                        ", failed ones by their syndromes)");
   }
   add_figures(table, figures, summary.ledger, summary.epsilon_correctness);
   table.row("time", fixed(seconds, 2) + " s, " +

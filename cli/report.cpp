@@ -44,11 +44,10 @@ Json qber_json(const ReconcileSummary& summary) {
   Json object;
   object["accepted_blocks"] = summary.accepted > 0 ? Json(summary.accepted_qber) : Json(nullptr);
   object["accepted_blocks_note"] = "biased low: blocks with many errors fail";
-  const QberEstimate& estimate = summary.all_blocks_qber;
-  object["all_blocks"] = estimate.looks_unrelated ? Json(nullptr) : Json(estimate.qber);
-  object["all_blocks_interval"] =
-      estimate.looks_unrelated ? Json(nullptr) : Json{estimate.low, estimate.high};
-  object["all_blocks_note"] = "maximum likelihood from the syndrome differences";
+  const auto& all = summary.all_blocks_qber;
+  object["all_blocks"] = all ? Json(all->qber) : Json(nullptr);
+  object["all_blocks_interval"] = all ? Json{all->low, all->high} : Json(nullptr);
+  object["all_blocks_note"] = "failed blocks by maximum likelihood from their syndrome differences";
   return object;
 }
 
@@ -176,15 +175,16 @@ Json sender_report(const Design& design, const SettleSummary& summary, const Run
 std::string failure_diagnosis(const Design& design, const ReconcileSummary& summary) {
   const double failed = static_cast<double>(summary.failed()) / static_cast<double>(summary.blocks);
   if (failed < kNearlyAllFailed) return "";
-  const QberEstimate& estimate = summary.all_blocks_qber;
+  const QberEstimate& estimate = summary.failed_qber;
   std::string text =
       counted(summary.failed(), "block") + " of " + grouped(summary.blocks) + " failed. ";
   if (estimate.looks_unrelated) {
-    return text +
-           "The strings look as if they did not belong together: a slip, another key, or "
-           "more than the code can tell.\n";
+    return text + "Either their QBER is above " + percent(estimate.low, 2) +
+           " (the design is for " + percent(design.qber, 2) +
+           "), or the strings do not belong together: a slip, or another key. A syndrome of this "
+           "length cannot tell which.\n";
   }
-  text += "The syndromes look like a QBER of " + percent(estimate.qber, 2) + " (" +
+  text += "Their syndromes look like a QBER of " + percent(estimate.qber, 2) + " (" +
           percent(estimate.low, 2) + " to " + percent(estimate.high, 2) + "); the design is for " +
           percent(design.qber, 2) + ".";
   if (estimate.low > design.qber) text += " Take a design for the higher QBER.";

@@ -119,13 +119,14 @@ DifferenceCounter::DifferenceCounter(const FrozenSet& frozen, Precoding precodin
   if (nodes_.size() > kMostNodes) nodes_.resize(kMostNodes);
 }
 
-DifferenceCounts DifferenceCounter::count(Span<const std::uint64_t> difference_rows,
-                                          unsigned lanes) const {
+DifferenceCounts DifferenceCounter::count(Span<const std::uint64_t> difference_rows, unsigned lanes,
+                                          unsigned counted) const {
+  if (counted > lanes) throw std::invalid_argument("more lanes counted than there are");
   if (lanes == 0 || lanes > kMaxLanes || (lanes & (lanes - 1)) != 0) {
     throw std::invalid_argument("lanes must be a power of two from 1 to 512");
   }
   DifferenceCounts counts;
-  counts.blocks = lanes;
+  counts.blocks = counted;
   KeyWords sums;
   for (const Node& node : nodes_) {
     const unsigned log2 = block_length_.log2() - node.prefix_bits;
@@ -136,7 +137,7 @@ DifferenceCounts DifferenceCounter::count(Span<const std::uint64_t> difference_r
     sums.assign(words_for(length.bits() * lanes), 0);
     copy_bits(difference_rows, node.prefix * bits, sums, 0, bits);
     polar_transform(sums, length, lanes);
-    counts.bits[node.log2_weight] += bits;
+    counts.bits[node.log2_weight] += std::size_t{counted} << log2;
     counts.ones[node.log2_weight] += count_ones(sums);
   }
   return counts;

@@ -1,4 +1,4 @@
-// The QBER of all blocks, from the public bits alone, whether or not any block decodes.
+// The QBER of blocks from their public bits alone, whether or not any of them decodes.
 //
 // What it is for: when nearly all blocks fail, reconcile says what it looks like: a QBER far above
 // the design's, with the estimate, or strings that do not belong together (a slip by some bits,
@@ -43,8 +43,14 @@ class DifferenceCounter {
   DifferenceCounter(const FrozenSet& frozen, Precoding precoding);
 
   // difference_rows: words_for(N lanes) words, bit i lanes + l is d_i of block l; open indices are
-  // ignored. REQUIRES: lanes a power of two from 1 to 512 (std::invalid_argument otherwise).
-  DifferenceCounts count(Span<const std::uint64_t> difference_rows, unsigned lanes) const;
+  // ignored. counted: how many of the lanes count; the bits of the others must be 0.
+  // REQUIRES: lanes a power of two from 1 to 512, counted <= lanes (std::invalid_argument
+  // otherwise).
+  DifferenceCounts count(Span<const std::uint64_t> difference_rows, unsigned lanes,
+                         unsigned counted) const;
+  DifferenceCounts count(Span<const std::uint64_t> difference_rows, unsigned lanes) const {
+    return count(difference_rows, lanes, lanes);
+  }
 
   // The variance of the derivative of the log likelihood of p over what it would be if no two
   // bits shared a position, at least 1. REQUIRES: 0 < p < 0.5.

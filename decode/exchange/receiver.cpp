@@ -28,6 +28,30 @@ struct ReconcileWork {
   DifferenceCounts counts;
 };
 
+// Sets the bits of the given lanes to 0 in every row.
+void clear_lanes(const BitString& cleared, KeyWords& rows) {
+  const std::size_t lanes = cleared.size();
+  // The pattern of one row, repeated until it fills a word, or the words of a row.
+  BitString pattern(std::max<std::size_t>(lanes, 64));
+  for (std::size_t i = 0; i < pattern.size(); ++i) pattern.set(i, cleared[i % lanes]);
+  const Span<const std::uint64_t> words = pattern.words();
+  for (std::size_t i = 0; i < rows.size(); ++i) rows[i] &= ~words[i % words.size()];
+}
+
+// The QBER over all blocks from what was corrected and from the failed blocks' syndromes.
+std::optional<ReconcileSummary::Interval> qber_of_all_blocks(const ReconcileSummary& summary,
+                                                             std::size_t block_bits) {
+  if (summary.failed() > 0 && summary.failed_qber.looks_unrelated) return std::nullopt;
+  const auto total = static_cast<double>(summary.blocks);
+  const double known =
+      static_cast<double>(summary.errors_corrected) / (total * static_cast<double>(block_bits));
+  const double share = static_cast<double>(summary.failed()) / total;
+  const QberEstimate& failed = summary.failed_qber;
+  if (share == 0) return ReconcileSummary::Interval{known, known, known};
+  return ReconcileSummary::Interval{known + share * failed.qber, known + share * failed.low,
+                                    known + share * failed.high};
+}
+
 // Forms the syndrome difference, decodes it, and checks every lane.
 void reconcile_batch(const SyndromeFormer& former, const DifferenceCounter& counter,
                      const Code& code, const BatchDecoder& decoder, const Cut& cut,
@@ -38,7 +62,6 @@ void reconcile_batch(const SyndromeFormer& former, const DifferenceCounter& coun
   BitString syndrome = former.gather(difference, lanes);
   syndrome ^= work.record.syndrome;
   former.scatter(syndrome, lanes, difference);
-  work.counts = counter.count(difference, lanes);
 
   KeyWords error_rows(difference.size());
   decoder.decode(difference, lanes, error_rows);
@@ -56,6 +79,10 @@ void reconcile_batch(const SyndromeFormer& former, const DifferenceCounter& coun
     }
     work.lane_agrees.set(lane, agrees);
   }
+  const auto failed = static_cast<unsigned>(lanes - work.lane_agrees.count());
+  if (failed == 0) return;
+  clear_lanes(work.lane_agrees, difference);
+  work.counts = counter.count(difference, lanes, failed);
 }
 
 // Tags accepted blocks group by group while they come by in ascending order.
@@ -223,7 +250,8 @@ ReconcileSummary reconcile(const Design& design, const BatchDecoder& decoder, co
     summary.accepted_qber = static_cast<double>(summary.errors_corrected) /
                             static_cast<double>(summary.accepted * bits);
   }
-  summary.all_blocks_qber = estimate_qber(counter, counts);
+  if (summary.failed() > 0) summary.failed_qber = estimate_qber(counter, counts);
+  summary.all_blocks_qber = qber_of_all_blocks(summary, bits);
   return summary;
 }
 

@@ -44,8 +44,16 @@ struct ReconcileSummary {
   double epsilon_correctness = 0;
   // Over accepted blocks: biased low, because blocks with many errors fail. 0 where there is none.
   double accepted_qber = 0;
-  // Over all blocks: maximum likelihood from the syndrome differences.
-  QberEstimate all_blocks_qber;
+  // Of the failed blocks: maximum likelihood from their syndrome differences.
+  QberEstimate failed_qber;
+  // Over all blocks: what was corrected in accepted ones, and the estimate for failed ones. None
+  // where the failed blocks tell nothing.
+  struct Interval {
+    double qber;
+    double low;
+    double high;
+  };
+  std::optional<Interval> all_blocks_qber;
 
   std::uint64_t failed() const { return blocks - accepted; }
 };
