@@ -3,8 +3,8 @@
 #include <algorithm>
 #include <cmath>
 #include <cstdint>
+#include <cstring>
 #include <limits>
-#include <queue>
 
 namespace frostline {
 namespace {
@@ -36,68 +36,111 @@ double unit_entropy(double ratio) {
   return ratio > 0 ? (1 + ratio) * std::log1p(ratio) - ratio * std::log(ratio) : 0;
 }
 
+// 2 atanh(s) for |s| <= 0.172, to 1e-12.
+double log_series(double s) {
+  const double y = s * s;
+  return 2 * s *
+         (1 +
+          y * (1.0 / 3 + y * (1.0 / 5 + y * (1.0 / 7 + y * (1.0 / 9 + y * (1.0 / 11 + y / 13))))));
+}
+
+// unit_entropy to about 1e-12: it only decides which letters are merged, never what they hold, and
+// takes most of the time of a construction.
+double quick_unit_entropy(double ratio) {
+  constexpr double kLog2 = 0.69314718055994530942;
+  constexpr double kRootHalf = 0.70710678118654752440;
+  if (ratio < std::numeric_limits<double>::min()) return 0;
+  const bool low = ratio < 0.4142;
+  const double log1p =
+      low ? log_series(ratio / (2 + ratio)) : kLog2 + log_series((ratio - 1) / (3 + ratio));
+  std::uint64_t bits;
+  std::memcpy(&bits, &ratio, sizeof bits);
+  int exponent = static_cast<int>(bits >> 52U) - 1022;
+  bits = (bits & 0xFFFFFFFFFFFFFU) | 0x3FE0000000000000U;
+  double mantissa;  // in [1/2, 1)
+  std::memcpy(&mantissa, &bits, sizeof mantissa);
+  const bool small = mantissa < kRootHalf;
+  mantissa = small ? 2 * mantissa : mantissa;
+  exponent -= small ? 1 : 0;
+  const double log = exponent * kLog2 + log_series((mantissa - 1) / (mantissa + 1));
+  return (1 + ratio) * log1p - ratio * log;
+}
+
 double entropy(const Letter& letter) { return letter.given0 * unit_entropy(letter.ratio); }
+double quick_entropy(const Letter& letter) {
+  return letter.given0 * quick_unit_entropy(letter.ratio);
+}
 
 Letter joined(const Letter& x, const Letter& y) {
   return letter_of(x.given0 + y.given0, x.given1 + y.given1);
 }
 
-// A doubly linked list over the letters with the cost of taking each one out, cheapest first.
-// Costs that have changed leave stale entries in the queue, told by their version.
+// The letters as a doubly linked list, with the cost of taking each one out in a tournament tree
+// whose root is the cheapest.
 class Removal {
  public:
-  explicit Removal(std::size_t count)
-      : previous_(count), next_(count), version_(count, 0), gone_(count, false) {
+  explicit Removal(std::size_t count) : count_(count), links_(count) {
+    while (leaves_ < count) leaves_ *= 2;
+    costs_.assign(leaves_, std::numeric_limits<double>::infinity());
+    winners_.resize(2 * leaves_);
     for (std::size_t i = 0; i < count; ++i) {
-      previous_[i] = static_cast<std::uint32_t>(i == 0 ? count : i - 1);
-      next_[i] = static_cast<std::uint32_t>(i + 1);
+      links_[i] = {static_cast<std::uint32_t>(i == 0 ? count : i - 1),
+                   static_cast<std::uint32_t>(i + 1)};
+    }
+    for (std::size_t i = 0; i < leaves_; ++i) {
+      winners_[leaves_ + i] = static_cast<std::uint32_t>(i);
     }
   }
 
-  std::size_t end() const { return next_.size(); }
-  std::size_t previous(std::size_t i) const { return previous_[i]; }
-  std::size_t next(std::size_t i) const { return next_[i]; }
-  bool is_gone(std::size_t i) const { return gone_[i]; }
+  std::size_t end() const { return count_; }
+  std::size_t previous(std::size_t i) const { return links_[i].previous; }
+  std::size_t next(std::size_t i) const { return links_[i].next; }
 
+  // First costs of all letters; then hold_contest once.
+  void set_first_cost(std::size_t i, double cost) { costs_[i] = cost; }
+  void hold_contest() {
+    for (std::size_t node = leaves_ - 1; node > 0; --node) decide(node);
+  }
   void set_cost(std::size_t i, double cost) {
-    queue_.push({cost, static_cast<std::uint32_t>(i), ++version_[i]});
+    costs_[i] = cost;
+    for (std::size_t node = (leaves_ + i) / 2; node > 0; node /= 2) decide(node);
   }
-  void void_cost(std::size_t i) { ++version_[i]; }
-  std::size_t cheapest() {
-    while (queue_.top().version != version_[queue_.top().index]) queue_.pop();
-    const std::size_t index = queue_.top().index;
-    queue_.pop();
-    return index;
-  }
+  std::size_t cheapest() const { return winners_[1]; }
   void remove(std::size_t i) {
-    gone_[i] = true;
-    ++version_[i];
-    if (previous_[i] != end()) next_[previous_[i]] = next_[i];
-    if (next_[i] != end()) previous_[next_[i]] = previous_[i];
+    const Link link = links_[i];
+    if (link.previous != count_) links_[link.previous].next = link.next;
+    if (link.next != count_) links_[link.next].previous = link.previous;
+    set_cost(i, std::numeric_limits<double>::infinity());
+  }
+  // The letters left, in their order.
+  void keep_rest(SymmetricChannel& w) const {
+    std::size_t kept = 0;
+    for (std::size_t i = 0; i != count_; i = links_[i].next) w[kept++] = w[i];
+    w.resize(kept);
   }
 
  private:
-  struct Entry {
-    double cost;
-    std::uint32_t index;
-    std::uint32_t version;
-    bool operator<(const Entry& other) const {
-      return cost != other.cost ? cost > other.cost : index > other.index;
-    }
+  struct Link {
+    std::uint32_t previous;
+    std::uint32_t next;
   };
-  std::vector<std::uint32_t> previous_;
-  std::vector<std::uint32_t> next_;
-  std::vector<std::uint32_t> version_;
-  std::vector<bool> gone_;
-  std::priority_queue<Entry> queue_;
+  void decide(std::size_t node) {
+    const std::uint32_t left = winners_[2 * node];
+    const std::uint32_t right = winners_[2 * node + 1];
+    winners_[node] = costs_[right] < costs_[left] ? right : left;
+  }
+
+  std::size_t count_;
+  std::size_t leaves_ = 1;
+  std::vector<Link> links_;
+  std::vector<double> costs_;
+  std::vector<std::uint32_t> winners_;
 };
 
-void keep_rest(SymmetricChannel& w, const Removal& removal) {
-  std::size_t kept = 0;
-  for (std::size_t i = 0; i < w.size(); ++i) {
-    if (!removal.is_gone(i)) w[kept++] = w[i];
-  }
-  w.resize(kept);
+std::vector<double> quick_entropies(const SymmetricChannel& w) {
+  std::vector<double> entropies(w.size());
+  for (std::size_t i = 0; i < w.size(); ++i) entropies[i] = quick_entropy(w[i]);
+  return entropies;
 }
 
 }  // namespace
@@ -134,43 +177,50 @@ void plus_step(const SymmetricChannel& w, SymmetricChannel& result) {
 
 void degrade(SymmetricChannel& w, std::size_t max_letters) {
   if (w.size() <= max_letters) return;
-  // The cost of a letter is that of joining it with the next one.
   Removal removal(w.size());
-  const auto price = [&](std::size_t i) {
-    const std::size_t next = removal.next(i);
-    if (next == removal.end()) return removal.void_cost(i);
-    const double loss = entropy(joined(w[i], w[next])) - entropy(w[i]) - entropy(w[next]);
-    removal.set_cost(i, loss);
+  std::vector<double> entropies = quick_entropies(w);
+  // The cost of a letter is that of joining it into the one before.
+  const auto cost = [&](std::size_t i) {
+    const std::size_t previous = removal.previous(i);
+    return quick_entropy(joined(w[previous], w[i])) - entropies[previous] - entropies[i];
   };
-  for (std::size_t i = 0; i < w.size(); ++i) price(i);
+  for (std::size_t i = 1; i < w.size(); ++i) removal.set_first_cost(i, cost(i));
+  removal.hold_contest();
   for (std::size_t left = w.size(); left > max_letters; --left) {
     const std::size_t i = removal.cheapest();
+    const std::size_t previous = removal.previous(i);
     const std::size_t next = removal.next(i);
-    w[i] = joined(w[i], w[next]);
-    removal.remove(next);
-    price(i);
-    if (removal.previous(i) != removal.end()) price(removal.previous(i));
+    w[previous] = joined(w[previous], w[i]);
+    entropies[previous] = quick_entropy(w[previous]);
+    removal.remove(i);
+    if (removal.previous(previous) != removal.end()) removal.set_cost(previous, cost(previous));
+    if (next != removal.end()) removal.set_cost(next, cost(next));
   }
-  keep_rest(w, removal);
+  removal.keep_rest(w);
 }
 
 void upgrade(SymmetricChannel& w, std::size_t max_letters) {
   if (w.size() <= max_letters) return;
-  // (a, b) = (x, x r1) + (y, y r3) with the neighbours' ratios r1 > r > r3.
   Removal removal(w.size());
+  // (a, b) = (x, x r1) + (y, y r3) with the neighbours' ratios r1 > r > r3.
   const auto share_of_previous = [&](std::size_t i) {
     const double r1 = w[removal.previous(i)].ratio;
     const double r3 = w[removal.next(i)].ratio;
     return w[i].given0 * ((w[i].ratio - r3) / (r1 - r3));
   };
-  const auto price = [&](std::size_t i) {
-    if (removal.previous(i) == removal.end() || removal.next(i) == removal.end()) return;
+  // Entropy a unit of a: the ratio of a letter never changes here.
+  std::vector<double> unit(w.size());
+  for (std::size_t i = 0; i < w.size(); ++i) unit[i] = quick_unit_entropy(w[i].ratio);
+  const auto cost = [&](std::size_t i) {
     const double x = share_of_previous(i);
     const double y = w[i].given0 - x;
-    removal.set_cost(i, entropy(w[i]) - x * unit_entropy(w[removal.previous(i)].ratio) -
-                            y * unit_entropy(w[removal.next(i)].ratio));
+    return w[i].given0 * unit[i] - x * unit[removal.previous(i)] - y * unit[removal.next(i)];
   };
-  for (std::size_t i = 0; i < w.size(); ++i) price(i);
+  const auto is_inner = [&](std::size_t i) {
+    return removal.previous(i) != removal.end() && removal.next(i) != removal.end();
+  };
+  for (std::size_t i = 1; i + 1 < w.size(); ++i) removal.set_first_cost(i, cost(i));
+  removal.hold_contest();
   for (std::size_t left = w.size(); left > max_letters; --left) {
     const std::size_t i = removal.cheapest();
     const std::size_t previous = removal.previous(i);
@@ -182,10 +232,10 @@ void upgrade(SymmetricChannel& w, std::size_t max_letters) {
     w[next].given0 += y;
     w[next].given1 += y * w[next].ratio;
     removal.remove(i);
-    price(previous);
-    price(next);
+    if (is_inner(previous)) removal.set_cost(previous, cost(previous));
+    if (is_inner(next)) removal.set_cost(next, cost(next));
   }
-  keep_rest(w, removal);
+  removal.keep_rest(w);
 }
 
 double error_probability(const SymmetricChannel& w) {
