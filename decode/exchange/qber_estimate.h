@@ -36,8 +36,8 @@ struct DifferenceCounts {
   DifferenceCounts& operator+=(const DifferenceCounts& other);
 };
 
-// Counts the differences of one code. Immutable after construction, so any number of
-// threads may share it.
+// Counts the differences of one code. Immutable after construction, so any number of threads may
+// share it.
 class DifferenceCounter {
  public:
   DifferenceCounter(const FrozenSet& frozen, Precoding precoding);

@@ -2,43 +2,25 @@
 // QBER estimate. Counter key_bits: key bits a second on one core.
 #include <benchmark/benchmark.h>
 
-#include <algorithm>
-#include <cmath>
 #include <cstdint>
-#include <numeric>
-#include <vector>
 
 #include "decode/exchange/qber_estimate.h"
 #include "decode/reference/successive_cancellation.h"
 #include "polar/check_bits.h"
 #include "polar/random.h"
 #include "polar/syndrome.h"
+#include "tests/support/polarized_frozen_set.h"
 
 namespace frostline {
 namespace {
 
 constexpr double kQber = 0.02;
 
-// A code for QBER 2 % by the Bhattacharyya recursion (E. Arikan, IEEE Trans. IT 55(7), 2009), with
-// M = 1.4 N h2(p): the efficiency of a good code at N = 2^16.
+// A code for QBER 2 % with M = 1.4 N h2(p), the efficiency of a good code at N = 2^16.
 Code bench_code(BlockLength length, Precoding precoding) {
-  std::vector<double> z{2 * std::sqrt(kQber * (1 - kQber))};
-  while (z.size() < length.bits()) {
-    std::vector<double> next;
-    for (const double parent : z) {
-      next.push_back(2 * parent - parent * parent);
-      next.push_back(parent * parent);
-    }
-    z = std::move(next);
-  }
-  std::vector<std::size_t> order(length.bits());
-  std::iota(order.begin(), order.end(), std::size_t{0});
-  std::stable_sort(order.begin(), order.end(),
-                   [&](std::size_t a, std::size_t b) { return z[a] > z[b]; });
-  BitString mask(length.bits());
-  const std::size_t frozen = length.bits() * 198 / 1000;
-  for (std::size_t k = 0; k < frozen; ++k) mask.set(order[k], true);
-  return {FrozenSet(length, std::move(mask)), precoding, 0};
+  return {testing::polarized_frozen_set(length, testing::bsc_bhattacharyya(kQber),
+                                        length.bits() * 198 / 1000),
+          precoding, 0};
 }
 
 BitString difference_rows(const Code& code, unsigned lanes) {

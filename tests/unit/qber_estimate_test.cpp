@@ -2,40 +2,23 @@
 
 #include <gtest/gtest.h>
 
+#include <algorithm>
 #include <cmath>
+#include <iterator>
 #include <stdexcept>
 #include <vector>
 
 #include "polar/syndrome.h"
+#include "tests/support/polarized_frozen_set.h"
 #include "tests/support/random_bits.h"
 
 namespace frostline {
 namespace {
 
 using testing::Generator;
+using testing::polarized_frozen_set;
 
 constexpr Precoding kPrecodings[] = {Precoding::none, Precoding::state8};
-
-// Frozen indices by the polarization of a binary erasure channel, Z- = 2Z - Z^2, Z+ = Z^2
-// (E. Arikan, IEEE Trans. IT 55(7), 2009): the shape of a design, with light rows among the frozen.
-FrozenSet polarized_frozen_set(BlockLength length, double z, std::size_t frozen_count) {
-  std::vector<double> erased{z};
-  while (erased.size() < length.bits()) {
-    std::vector<double> next;
-    for (const double parent : erased) {
-      next.push_back(2 * parent - parent * parent);
-      next.push_back(parent * parent);
-    }
-    erased = std::move(next);
-  }
-  std::vector<std::size_t> order(length.bits());
-  std::iota(order.begin(), order.end(), std::size_t{0});
-  std::stable_sort(order.begin(), order.end(),
-                   [&](std::size_t a, std::size_t b) { return erased[a] > erased[b]; });
-  BitString mask(length.bits());
-  for (std::size_t k = 0; k < frozen_count; ++k) mask.set(order[k], true);
-  return FrozenSet(length, std::move(mask));
-}
 
 // The public differences of `lanes` blocks whose positions are wrong with probability p.
 BitString difference_rows(const SyndromeFormer& former, Generator& generator, unsigned lanes,
@@ -61,11 +44,16 @@ void expect_equal(const DifferenceCounts& a, const DifferenceCounts& b) {
   EXPECT_EQ(a.blocks, b.blocks);
 }
 
-// The counts again, from the error pattern itself: a largest node of plain frozen indices at prefix
-// a tells, for each lower part j, the sum of the positions with that lower part whose upper part
-// contains a.
-DifferenceCounts count_by_definition(const FrozenSet& frozen, Precoding precoding,
-                                     const BitString& errors, unsigned lanes) {
+// One bit that the counter counts: the sum of the positions whose lower part is `lower` and whose
+// upper part, all bits from log2 on, contains the prefix of its node.
+struct NodeSum {
+  unsigned log2_weight;
+  std::vector<std::size_t> positions;
+};
+
+// All of them, from the definition: a node counts when all its indices show plain u and its
+// parent's do not.
+std::vector<NodeSum> node_sums(const FrozenSet& frozen, Precoding precoding) {
   const PrecodingSchedule schedule(frozen, precoding);
   const unsigned n = frozen.block_length().log2();
   const auto all_plain = [&](std::size_t first, std::size_t length) {
@@ -74,25 +62,35 @@ DifferenceCounts count_by_definition(const FrozenSet& frozen, Precoding precodin
     }
     return true;
   };
-  DifferenceCounts counts;
-  counts.blocks = lanes;
+  std::vector<NodeSum> sums;
   for (unsigned log2 = 0; log2 <= n; ++log2) {
     const std::size_t length = std::size_t{1} << log2;
     for (std::size_t prefix = 0; prefix < (std::size_t{1} << (n - log2)); ++prefix) {
-      const bool largest = log2 == n || !all_plain((prefix / 2) * 2 * length, 2 * length);
+      const bool largest = log2 == n || !all_plain(prefix / 2 * 2 * length, 2 * length);
       if (!largest || !all_plain(prefix * length, length)) continue;
-      for (std::size_t j = 0; j < length; ++j) {
-        for (unsigned lane = 0; lane < lanes; ++lane) {
-          unsigned log2_weight = n - log2;
-          for (std::size_t rest = prefix; rest != 0; rest &= rest - 1) --log2_weight;
-          bool sum = false;
-          for (std::size_t upper = 0; upper < (std::size_t{1} << (n - log2)); ++upper) {
-            if ((upper & prefix) == prefix) sum ^= errors[(upper * length + j) * lanes + lane];
-          }
-          ++counts.bits[log2_weight];
-          counts.ones[log2_weight] += sum;
+      for (std::size_t lower = 0; lower < length; ++lower) {
+        NodeSum sum{0, {}};
+        for (std::size_t upper = 0; upper < (std::size_t{1} << (n - log2)); ++upper) {
+          if ((upper & prefix) == prefix) sum.positions.push_back(upper * length + lower);
         }
+        while ((std::size_t{1} << sum.log2_weight) < sum.positions.size()) ++sum.log2_weight;
+        sums.push_back(sum);
       }
+    }
+  }
+  return sums;
+}
+
+DifferenceCounts count_by_definition(const std::vector<NodeSum>& sums, const BitString& errors,
+                                     unsigned lanes) {
+  DifferenceCounts counts;
+  counts.blocks = lanes;
+  for (const NodeSum& sum : sums) {
+    for (unsigned lane = 0; lane < lanes; ++lane) {
+      bool bit = false;
+      for (const std::size_t position : sum.positions) bit ^= errors[position * lanes + lane];
+      ++counts.bits[sum.log2_weight];
+      counts.ones[sum.log2_weight] += bit;
     }
   }
   return counts;
@@ -117,7 +115,7 @@ TEST(QberEstimate, CountsThePartialSumsOfAllFrozenNodes) {
             if (!frozen.is_frozen(i / lanes)) rows.set(i, generator() & 1U);
           }
           expect_equal(DifferenceCounter(frozen, precoding).count(rows.words(), lanes),
-                       count_by_definition(frozen, precoding, errors, lanes));
+                       count_by_definition(node_sums(frozen, precoding), errors, lanes));
         }
       }
     }
@@ -143,6 +141,53 @@ TEST(QberEstimate, CountsDoNotDependOnTheOrderOfBatches) {
   pairs += batches[3];
   expect_equal(forward, pairs);
   EXPECT_EQ(forward.blocks, 320U);
+}
+
+// The sum over all pairs of bits of a block, their shared positions counted one by one.
+double variance_ratio_by_definition(const std::vector<NodeSum>& sums, double p) {
+  const double theta = 1 - 2 * p;
+  // q = (1 - theta^w) / 2, its derivative, and the derivative of the likelihood for d - q = 1.
+  const auto q = [&](double w) { return (1 - std::pow(theta, w)) / 2; };
+  const auto slope = [&](double w) { return w * std::pow(theta, w - 1); };
+  const auto score = [&](double w) { return slope(w) / (q(w) * (1 - q(w))); };
+  double independent = 0;
+  double variance = 0;
+  for (const NodeSum& a : sums) {
+    const auto wa = static_cast<double>(a.positions.size());
+    independent += slope(wa) * score(wa);
+    for (const NodeSum& b : sums) {
+      const auto wb = static_cast<double>(b.positions.size());
+      std::vector<std::size_t> shared;
+      std::set_intersection(a.positions.begin(), a.positions.end(), b.positions.begin(),
+                            b.positions.end(), std::back_inserter(shared));
+      const double apart = wa + wb - 2 * static_cast<double>(shared.size());
+      const double covariance = (std::pow(theta, apart) - std::pow(theta, wa + wb)) / 4;
+      variance += score(wa) * score(wb) * covariance;
+    }
+  }
+  return std::max(variance / independent, 1.0);
+}
+
+TEST(QberEstimate, WidensTheIntervalByWhatSharedPositionsDo) {
+  Generator generator(7);
+  for (const std::size_t length : {8, 64, 256}) {
+    for (const FrozenSet& frozen : {testing::random_frozen_set(generator, BlockLength(length), 0.6),
+                                    testing::bytewise_frozen_set(generator, BlockLength(length)),
+                                    polarized_frozen_set(BlockLength(length), 0.3, length / 2),
+                                    polarized_frozen_set(BlockLength(length), 0.3, length)}) {
+      for (const Precoding precoding : kPrecodings) {
+        const std::vector<NodeSum> sums = node_sums(frozen, precoding);
+        if (sums.empty()) continue;
+        const DifferenceCounter counter(frozen, precoding);
+        const DifferenceCounts counts = counter.count(BitString(length * 4).words(), 4);
+        for (const double p : {0.001, 0.03, 0.2, 0.45}) {
+          const double wanted = variance_ratio_by_definition(sums, p);
+          ASSERT_NEAR(counter.variance_ratio(counts, p), wanted, 1e-9 * wanted)
+              << "N = " << length << ", p = " << p;
+        }
+      }
+    }
+  }
 }
 
 struct Case {

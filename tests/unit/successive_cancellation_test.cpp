@@ -11,6 +11,7 @@
 #include "decode/reference/arithmetic_rules.h"
 #include "polar/syndrome.h"
 #include "polar/transform.h"
+#include "tests/support/polarized_frozen_set.h"
 #include "tests/support/random_bits.h"
 
 namespace frostline {
@@ -42,30 +43,9 @@ BitString pattern_of(BlockLength length, std::uint64_t bits) {
   return pattern;
 }
 
-// Upper bound of the union over open indices of half the Bhattacharyya parameter, Z- <= 2Z - Z^2,
-// Z+ = Z^2 (E. Arikan, IEEE Trans. IT 55(7), 2009, Proposition 5), and the code that it chooses.
-std::vector<double> bhattacharyya(BlockLength length, double p) {
-  std::vector<double> z{2 * std::sqrt(p * (1 - p))};
-  while (z.size() < length.bits()) {
-    std::vector<double> next;
-    for (const double parent : z) {
-      next.push_back(2 * parent - parent * parent);
-      next.push_back(parent * parent);
-    }
-    z = std::move(next);
-  }
-  return z;
-}
-
+// A code whose union bound is small where M leaves room.
 FrozenSet bhattacharyya_frozen_set(BlockLength length, double p, std::size_t frozen_count) {
-  const std::vector<double> z = bhattacharyya(length, p);
-  std::vector<std::size_t> order(length.bits());
-  std::iota(order.begin(), order.end(), std::size_t{0});
-  std::stable_sort(order.begin(), order.end(),
-                   [&](std::size_t a, std::size_t b) { return z[a] > z[b]; });
-  BitString mask(length.bits());
-  for (std::size_t k = 0; k < frozen_count; ++k) mask.set(order[k], true);
-  return FrozenSet(length, std::move(mask));
+  return testing::polarized_frozen_set(length, testing::bsc_bhattacharyya(p), frozen_count);
 }
 
 TEST(SuccessiveCancellation, AlwaysShowsTheGivenPublicValues) {
@@ -445,7 +425,7 @@ TEST(SuccessiveCancellation, KeepsTheBhattacharyyaBound) {
   const BlockLength length(512);
   const double p = 0.05;
   const FrozenSet frozen = bhattacharyya_frozen_set(length, p, 310);
-  const std::vector<double> z = bhattacharyya(length, p);
+  const std::vector<double> z = testing::polarized(length, testing::bsc_bhattacharyya(p));
   double bound = 0;
   for (std::size_t i = 0; i < length.bits(); ++i) bound += frozen.is_frozen(i) ? 0 : z[i] / 2;
   ASSERT_GT(bound, 0.02);
