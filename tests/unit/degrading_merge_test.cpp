@@ -6,8 +6,8 @@
 #include <cmath>
 
 #include "construct/selection.h"
-#include "leaf_enumeration.h"
 #include "polar/error.h"
+#include "tests/support/leaf_enumeration.h"
 
 namespace frostline {
 namespace {
@@ -28,7 +28,7 @@ TEST(DegradingMerge, RefusesValuesOutsideItsRange) {
 TEST(DegradingMerge, EqualsExhaustiveEnumerationWhereNothingIsMerged) {
   for (const unsigned length : {8U, 16U}) {
     for (const double p : {0.001, 0.02, 0.11, 0.4}) {
-      const auto exact = testing_support::leaf_errors_by_enumeration(length, p);
+      const auto exact = testing::leaf_errors_by_enumeration(length, p);
       const Reliability upper = degrading_merge(BlockLength(length), p, 1024);
       const Reliability lower = upgrading_merge(BlockLength(length), p, 1024);
       EXPECT_EQ(upper.kind, ReliabilityKind::upper_bound);
@@ -45,7 +45,7 @@ TEST(DegradingMerge, EqualsExhaustiveEnumerationWhereNothingIsMerged) {
 
 TEST(DegradingMerge, BracketsExhaustiveEnumerationWhereItMerges) {
   for (const double p : {0.001, 0.11, 0.4}) {
-    const auto exact = testing_support::leaf_errors_by_enumeration(16, p);
+    const auto exact = testing::leaf_errors_by_enumeration(16, p);
     const Reliability upper = degrading_merge(BlockLength(16), p, 4);
     const Reliability lower = upgrading_merge(BlockLength(16), p, 4);
     for (unsigned i = 0; i < 16; ++i) {

@@ -8,16 +8,16 @@
 
 #include "construct/degrading_merge.h"
 #include "decode/reference/successive_cancellation.h"
-#include "genie_decoder.h"
-#include "leaf_enumeration.h"
 #include "polar/error.h"
 #include "polar/random.h"
 #include "polar/transform.h"
+#include "tests/support/genie_decoder.h"
+#include "tests/support/leaf_enumeration.h"
 
 namespace frostline {
 namespace {
 
-using testing_support::GenieDecoder;
+using testing::GenieDecoder;
 
 const Arithmetic kArithmetics[] = {Arithmetic::planes_of(2),      Arithmetic::planes_of(3),
                                    Arithmetic::planes_of(5),      Arithmetic::integer_of(3, 1),
@@ -30,8 +30,8 @@ std::vector<double> errors_by_enumeration(unsigned length, double p, const Arith
   std::vector<bool> bits(length);
   for (std::uint32_t x = 0; x < (std::uint32_t{1} << length); ++x) {
     for (unsigned j = 0; j < length; ++j) bits[j] = (x >> j) & 1U;
-    const std::uint32_t u = testing_support::transformed(x, length);
-    const double probability = testing_support::pattern_probability(x, length, p);
+    const std::uint32_t u = testing::transformed(x, length);
+    const double probability = testing::pattern_probability(x, length, p);
     const std::vector<bool> found = decoder.decisions(bits);
     for (unsigned i = 0; i < length; ++i) {
       if (found[i] != static_cast<bool>((u >> i) & 1U)) errors[i] += probability;
@@ -83,8 +83,8 @@ TEST(DensityEvolution, EqualsExhaustiveEnumerationByTheReferenceDecoder) {
     std::vector<double> errors(8, 0);
     for (std::uint32_t x = 0; x < 256; ++x) {
       BitString u(8);
-      for (unsigned j = 0; j < 8; ++j) u.set(j, (testing_support::transformed(x, 8) >> j) & 1U);
-      const double probability = testing_support::pattern_probability(x, 8, 0.11);
+      for (unsigned j = 0; j < 8; ++j) u.set(j, (testing::transformed(x, 8) >> j) & 1U);
+      const double probability = testing::pattern_probability(x, 8, 0.11);
       for (unsigned i = 0; i < 8; ++i) {
         if (decides(i, u, arithmetic) != u[i]) errors[i] += probability;
       }

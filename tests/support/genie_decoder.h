@@ -13,7 +13,7 @@
 
 #include "polar/arithmetic.h"
 
-namespace frostline::testing_support {
+namespace frostline::testing {
 
 struct SignedMessage {
   bool negative;
@@ -83,4 +83,4 @@ class GenieDecoder {
   int largest_;
 };
 
-}  // namespace frostline::testing_support
+}  // namespace frostline::testing

@@ -6,7 +6,7 @@
 #include <cstdint>
 #include <vector>
 
-namespace frostline::testing_support {
+namespace frostline::testing {
 
 // Probability that a word of length bits is the error pattern of a BSC(p).
 inline double pattern_probability(std::uint32_t pattern, unsigned length, double p) {
@@ -43,4 +43,4 @@ inline std::vector<double> leaf_errors_by_enumeration(unsigned length, double p)
   return errors;
 }
 
-}  // namespace frostline::testing_support
+}  // namespace frostline::testing
