@@ -21,6 +21,7 @@ struct Command {
 };
 
 int run_design(const std::vector<std::string>& arguments);
+int run_batch(const std::vector<std::string>& arguments);
 int run_inspect(const std::vector<std::string>& arguments);
 int run_limits(const std::vector<std::string>& arguments);
 int run_sample(const std::vector<std::string>& arguments);

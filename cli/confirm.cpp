@@ -46,9 +46,9 @@ int run_confirm(const std::vector<std::string>& arguments) {
   const auto provisional = open_provisional(options);
   const std::string receipt = read_file(options.text("RECEIPT"));
   const std::string verdict = read_file(options.text("VERDICT"));
+  RunState state("confirm", 1, options.quiet());
   FileSink file(path, FileAccess::secret);
   KeySink settled(file, key_format(options));
-  RunState state("confirm", 1, options.quiet());
   const ConfirmSummary summary = confirm(*provisional, receipt, options.text("RECEIPT"), verdict,
                                          options.text("VERDICT"), settled, state.control());
   file.commit();

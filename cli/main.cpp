@@ -2,6 +2,7 @@
 #include <sodium.h>
 
 #include <algorithm>
+#include <csignal>
 #include <cstdlib>
 #include <iostream>
 #include <new>
@@ -15,6 +16,7 @@ namespace {
 
 constexpr Command kCommands[] = {
     {"design", "choose a frozen set and write the design file", run_design},
+    {"batch", "choose frozen sets over a grid, resumable; and select among them", run_batch},
     {"inspect", "check a design file and describe it", run_inspect},
     {"limits", "what no one-way code can beat at a block length, QBER and FER", run_limits},
     {"sample", "make a pair of strings that differ with a given QBER, for demos and tests",
@@ -73,6 +75,8 @@ int run(const std::vector<std::string>& arguments) {
 
 int main(int argc, char** argv) {
   using namespace frostline;
+  // A closed pipe is an error of that output, and no reason to leave temporary files behind.
+  std::signal(SIGPIPE, SIG_IGN);
   try {
     if (sodium_init() < 0) throw InputError("libsodium does not start on this machine");
     return cli::run({argv + 1, argv + argc});

@@ -7,6 +7,7 @@
 #include <boost/program_options.hpp>
 #include <charconv>
 #include <cmath>
+#include <filesystem>
 #include <iostream>
 #include <memory>
 
@@ -236,12 +237,15 @@ std::optional<std::uint64_t> Options::optional_whole(const std::string& name) co
 
 void require_distinct_files(const std::vector<std::string>& inputs,
                             const std::vector<std::string>& outputs) {
-  // The same name, or two names of one regular file.
+  // One regular file, there or to be, however it is spelled.
   const auto same = [](const std::string& a, const std::string& b) {
     struct stat one {};
     struct stat two {};
     const bool there = ::stat(a.c_str(), &one) == 0 && ::stat(b.c_str(), &two) == 0;
-    if (!there) return a == b;
+    if (!there) {
+      return std::filesystem::weakly_canonical(std::filesystem::absolute(a)) ==
+             std::filesystem::weakly_canonical(std::filesystem::absolute(b));
+    }
     return S_ISREG(one.st_mode) && one.st_dev == two.st_dev && one.st_ino == two.st_ino;
   };
   for (std::size_t i = 0; i < outputs.size(); ++i) {

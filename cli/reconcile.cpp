@@ -139,13 +139,14 @@ int run_reconcile(const std::vector<std::string>& arguments) {
   reconcile_options.test_seed = options.optional_whole("test-only-seed");
   const auto decoder = make_batch_decoder(design);
 
+  // Before the outputs, so that no signal leaves their temporary files behind.
+  RunState state("reconcile", static_cast<double>(design.code.block_length().bits()),
+                 options.quiet());
   KeyOutputs keys(options);
   std::unique_ptr<FileSink> report;
   if (options.has("report"))
     report = std::make_unique<FileSink>(options.text("report"), FileAccess::secret);
   FileSink receipt(options.text("receipt"));
-  RunState state("reconcile", static_cast<double>(design.code.block_length().bits()),
-                 options.quiet());
   const ReconcileSummary summary =
       reconcile(design, *decoder, *key, message, reconcile_options, keys.sinks(), state.control());
   const double seconds = state.seconds();

@@ -31,7 +31,7 @@ Json figures_json(const RunFigures& figures) {
   Json object;
   object["qber"] = figures.qber;
   object["fer"] = figures.fer;
-  object["efficiency"] = figures.efficiency;
+  object["efficiency"] = figures.efficiency ? Json(*figures.efficiency) : Json(nullptr);
   object["limit_efficiency"] =
       figures.limit_efficiency ? Json(*figures.limit_efficiency) : Json(nullptr);
   object["phase_error"] = figures.phase_error;
@@ -79,7 +79,9 @@ RunFigures run_figures(const Design& design, std::uint64_t blocks, std::uint64_t
   figures.fer = 1 - static_cast<double>(kept_blocks) / static_cast<double>(blocks);
   figures.qber = qber;
   const std::uint64_t kept_bits = kept_blocks * figures.block_length;
-  figures.efficiency = efficiency(ledger.accepted, kept_bits, qber);
+  if (kept_blocks > 0 && qber > 0) {
+    figures.efficiency = efficiency(ledger.accepted, kept_bits, qber);
+  }
   if (qber > 0 && qber < 0.5 && figures.fer > 0 && figures.fer < 1) {
     figures.limit_efficiency =
         finite_length_limit(figures.block_length, qber, figures.fer).efficiency;
@@ -100,11 +102,14 @@ void add_figures(Table& table, const RunFigures& figures, const Ledger& ledger,
   table.row("disclosed", leaked_by_kind(ledger.disclosed))
       .row("of it, of kept blocks", leaked_by_kind(ledger.accepted));
   if (figures.kept_blocks == 0) return;
-  std::string f = fixed(figures.efficiency, 4) + " at QBER " + short_number(figures.qber);
-  if (figures.limit_efficiency) {
-    f += "; finite-length limit " + fixed(*figures.limit_efficiency, 4) + " at this FER";
+  if (figures.efficiency) {
+    std::string f = fixed(*figures.efficiency, 4) + " at QBER " + short_number(figures.qber);
+    if (figures.limit_efficiency) {
+      f += "; finite-length limit " + fixed(*figures.limit_efficiency, 4) + " at this FER";
+    }
+    table.row("f", f);
   }
-  table.row("f", f).row("eps_cor", short_number(epsilon_correctness));
+  table.row("eps_cor", short_number(epsilon_correctness));
   const std::string phase = " (phase error " + short_number(figures.phase_error) + ")";
   if (figures.net_key.plain <= 0) {
     table.row("net key", "no key at this error rate" + phase);

@@ -18,7 +18,8 @@ struct RunFigures {
   std::uint64_t kept_blocks;
   double fer;                              // 1 - kept / blocks
   double qber;                             // by which f and net key are told
-  double efficiency;                       // over the kept blocks, tags counted, at that QBER
+  std::optional<double> efficiency;        // over the kept blocks, tags counted, at that QBER;
+                                           // none where no block is kept or the QBER is 0
   std::optional<double> limit_efficiency;  // finite-length limit at that QBER and the measured FER
   double leakage_per_bit;                  // accepted leakage over kept key bits
   double phase_error;

@@ -13,24 +13,25 @@ static_assert(std::atomic<bool>::is_always_lock_free, "a signal handler writes i
 
 void request_stop(int) { stop_requested.store(true, std::memory_order_relaxed); }
 
+constexpr int kStopSignals[] = {SIGINT, SIGTERM, SIGHUP};
+
 using Seconds = std::chrono::duration<double>;
 
 }  // namespace
 
-RunState::RunState(std::string label, double bits_per_block, bool quiet)
+RunState::RunState(std::string label, double bits_per_block, bool quiet, std::string unit)
     : label_(std::move(label)),
       bits_per_block_(bits_per_block),
+      unit_(std::move(unit)),
       shows_(!quiet && isatty(STDERR_FILENO) != 0),
       start_(std::chrono::steady_clock::now()),
       last_(start_) {
   stop_requested = false;
-  std::signal(SIGINT, request_stop);
-  std::signal(SIGTERM, request_stop);
+  for (const int each : kStopSignals) std::signal(each, request_stop);
 }
 
 RunState::~RunState() {
-  std::signal(SIGINT, SIG_DFL);
-  std::signal(SIGTERM, SIG_DFL);
+  for (const int each : kStopSignals) std::signal(each, SIG_DFL);
   if (shown_) std::fputs("\r\033[K", stderr);
 }
 
@@ -55,9 +56,11 @@ void RunState::show(std::uint64_t done, std::uint64_t total) {
   const double elapsed = Seconds(now - start_).count();
   const double rate = elapsed > 0 ? static_cast<double>(done) / elapsed : 0;
   const double left = rate > 0 ? static_cast<double>(total - done) / rate : 0;
-  std::fprintf(stderr, "\r%s: %llu of %llu blocks, %.1f Mbit/s, %.0f s left\033[K", label_.c_str(),
+  const bool of_key = bits_per_block_ > 0;
+  std::fprintf(stderr, "\r%s: %llu of %llu %s, %.1f %s, %.0f s left\033[K", label_.c_str(),
                static_cast<unsigned long long>(done), static_cast<unsigned long long>(total),
-               rate * bits_per_block_ / 1e6, left);
+               unit_.c_str(), of_key ? rate * bits_per_block_ / 1e6 : rate,
+               of_key ? "Mbit/s" : "a second", left);
   std::fflush(stderr);
 }
 

@@ -8,12 +8,13 @@
 
 namespace frostline::cli {
 
-// Turns SIGINT and SIGTERM into a stop flag while it lives, and shows one progress line with rate
-// and time left on stderr where that is a terminal and quiet is false.
+// Turns SIGINT, SIGTERM and SIGHUP into a stop flag while it lives, and shows one progress line
+// with rate and time left on stderr where that is a terminal and quiet is false.
 class RunState {
  public:
-  // bits_per_block: for the rate that the progress line tells.
-  RunState(std::string label, double bits_per_block, bool quiet);
+  // Work in blocks of key: the progress line tells the rate in Mbit/s. Without bits_per_block work
+  // in units of another kind, told as units a second.
+  RunState(std::string label, double bits_per_block, bool quiet, std::string unit = "blocks");
   ~RunState();
   RunState(const RunState&) = delete;
   RunState& operator=(const RunState&) = delete;
@@ -26,6 +27,7 @@ class RunState {
 
   std::string label_;
   double bits_per_block_;
+  std::string unit_;
   bool shows_;
   bool shown_ = false;
   std::chrono::steady_clock::time_point start_;

@@ -67,11 +67,11 @@ int run_sample(const std::vector<std::string>& arguments) {
   const std::vector<std::string> paths = options.texts("output");
   if (paths.size() != 2) throw InputError("sample: -o takes two files");
   require_distinct_files({}, paths);
+  RunState state("sample", 1, options.quiet());
   FileSink file_a(paths[0], FileAccess::secret);
   FileSink file_b(paths[1], FileAccess::secret);
   KeySink a(file_a, format);
   KeySink b(file_b, format);
-  RunState state("sample", 1, options.quiet());
   const std::uint64_t differences = write_pair(bits, p, seed, a, b, state.control());
   file_a.finish();
   file_b.finish();

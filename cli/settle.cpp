@@ -70,13 +70,13 @@ int run_settle(const std::vector<std::string>& arguments) {
     throw InputError("--phase-error: " + short_number(phase) + " is not from 0 to 0.5");
   }
 
+  RunState state("settle", static_cast<double>(design.code.block_length().bits()), options.quiet());
   FileSink settled_file(options.text("output"), FileAccess::secret);
   KeySink settled(settled_file, key_format(options));
   std::unique_ptr<FileSink> report;
   if (options.has("report"))
     report = std::make_unique<FileSink>(options.text("report"), FileAccess::secret);
   FileSink verdict(options.text("verdict"));
-  RunState state("settle", static_cast<double>(design.code.block_length().bits()), options.quiet());
   const SettleSummary summary = settle(design.code, *key, message, receipt, options.text("RECEIPT"),
                                        settled, state.control());
   const double seconds = state.seconds();

@@ -69,9 +69,9 @@ int run_syndrome(const std::vector<std::string>& arguments) {
     message_options.lanes = static_cast<unsigned>(options.whole("lanes"));
   }
   message_options.test_seed = options.optional_whole("test-only-seed");
-  FileSink file = open_message(path);
   RunState state("syndrome", static_cast<double>(design.code.block_length().bits()),
                  options.quiet());
+  FileSink file = open_message(path);
   const MessageSummary summary =
       make_message(design.code, *key, message_options, file, state.control());
   file.commit();

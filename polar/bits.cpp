@@ -88,10 +88,12 @@ BitString& BitString::operator^=(const BitString& other) {
 }
 
 void BitString::append(const BitString& other) {
+  // Read before anything changes: other may be this string itself.
   const std::size_t first = size_;
-  size_ += other.size_;
-  words_.resize(words_for(size_));
-  copy_bits(other.words(), 0, words(), first, other.size_);
+  const std::size_t added = other.size_;
+  words_.resize(words_for(first + added));
+  size_ = first + added;
+  copy_bits(Span<const std::uint64_t>(other.words_), 0, words(), first, added);
 }
 
 void BitString::append(bool bit) {

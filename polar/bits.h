@@ -91,7 +91,7 @@ class BitString {
 void copy_bits(Span<const std::uint64_t> from, std::size_t from_first, Span<std::uint64_t> to,
                std::size_t to_first, std::size_t count);
 
-// Number of ones in the first bits of words.
+// Number of ones in all words.
 std::size_t count_ones(Span<const std::uint64_t> words);
 
 // Packed bytes, most significant bit first. unpack: REQUIRES packed.size() >= bytes_for(bits) and

@@ -263,7 +263,7 @@ Design design_from_json(std::string_view text, std::string_view name_view) {
   } catch (const InputError& error) {
     // Checks that know nothing of files get the file's name in front.
     const std::string what = error.what();
-    if (what.rfind(name, 0) == 0) throw;
+    if (what.rfind(name + ":", 0) == 0) throw;
     throw InputError(name + ": " + what);
   }
 }

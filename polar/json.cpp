@@ -26,6 +26,8 @@ Json parse_json(std::string_view text, std::string_view name) {
     value = Json::parse(text.begin(), text.end(), watch);
   } catch (const Json::parse_error& error) {
     throw InputError(std::string(name) + ": not JSON, byte " + std::to_string(error.byte));
+  } catch (const Json::out_of_range&) {
+    throw InputError(std::string(name) + ": a number is too large");
   }
   if (!repeated.empty()) {
     throw InputError(std::string(name) + ": key '" + repeated + "' stands twice");
