@@ -26,6 +26,8 @@ constexpr std::size_t kSmallestTask = 512;
 
 enum class Side { degrade, upgrade };
 
+using Reduce = void (*)(SymmetricChannel&, std::size_t);
+
 // Bounds through Z (Arikan 2009): on the degraded side Z(W-) <= 2Z - Z^2 and P <= Z / 2. On the
 // upgraded side Z(W-)^2 >= 1 - (1 - Z^2)^2, so that Z^2 follows the same recursion, and
 // P >= (1 - sqrt(1 - Z^2)) / 2.
@@ -48,7 +50,8 @@ LogBhattacharyya start_of_closing(double z, double complement, Side side) {
 
 class Merger {
  public:
-  Merger(Side side, std::size_t letters) : side_(side), letters_(letters) {}
+  Merger(Side side, Reduce reduce, std::size_t letters)
+      : side_(side), reduce_(reduce), letters_(letters) {}
 
   // The leaves below a channel.
   void leaves(const SymmetricChannel& w, Span<double> log_p) const {
@@ -62,13 +65,13 @@ class Merger {
     const auto below_minus = [&] {
       SymmetricChannel child;
       minus_step(w, child);
-      reduce(child);
+      reduce_(child, letters_);
       leaves(child, log_p.subspan(0, half));
     };
     const auto below_plus = [&] {
       SymmetricChannel child;
       plus_step(w, child);
-      reduce(child);
+      reduce_(child, letters_);
       leaves(child, log_p.subspan(half, half));
     };
     if (half >= kSmallestTask) {
@@ -80,14 +83,6 @@ class Merger {
   }
 
  private:
-  void reduce(SymmetricChannel& w) const {
-    if (side_ == Side::degrade) {
-      degrade(w, letters_);
-    } else {
-      upgrade(w, letters_);
-    }
-  }
-
   bool close_early(const SymmetricChannel& w, Span<double> log_p) const {
     const double error = error_probability(w);
     // 1 - Z <= 1 - 2P, and 1 - Z at most doubles with each step.
@@ -102,10 +97,11 @@ class Merger {
   }
 
   Side side_;
+  Reduce reduce_;
   std::size_t letters_;
 };
 
-Reliability merge(BlockLength block_length, double p, unsigned letters, Side side) {
+Reliability merge(BlockLength block_length, double p, unsigned letters, Side side, Reduce reduce) {
   require_error_rate(p, "QBER");
   if (letters < 4 || letters > 1024 || letters % 2 != 0) {
     throw InputError("output letters " + std::to_string(letters) +
@@ -116,18 +112,19 @@ Reliability merge(BlockLength block_length, double p, unsigned letters, Side sid
       side == Side::degrade ? ReliabilityKind::upper_bound : ReliabilityKind::lower_bound;
   reliability.log_error_probability.resize(block_length.bits());
   // A mirrored pair of letters is stored as one.
-  Merger(side, letters / 2).leaves(bsc_channel(p), reliability.log_error_probability);
+  Merger(side, reduce, letters / 2).leaves(bsc_channel(p), reliability.log_error_probability);
   return reliability;
 }
 
 }  // namespace
 
-Reliability degrading_merge(BlockLength block_length, double p, unsigned letters) {
-  return merge(block_length, p, letters, Side::degrade);
+Reliability degrading_merge(BlockLength block_length, double p, unsigned letters, Merging merging) {
+  return merge(block_length, p, letters, Side::degrade,
+               merging == Merging::greedy ? degrade : degrade_quickly);
 }
 
 Reliability upgrading_merge(BlockLength block_length, double p, unsigned letters) {
-  return merge(block_length, p, letters, Side::upgrade);
+  return merge(block_length, p, letters, Side::upgrade, upgrade);
 }
 
 }  // namespace frostline

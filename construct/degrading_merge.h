@@ -13,12 +13,19 @@ namespace frostline {
 
 constexpr unsigned kDefaultMergeLetters = 16;
 
-// kind: upper_bound, with respect to maximum likelihood with ties counted half, which exact SC
-// never exceeds where the bits of an open index are uniform. Ranges: 0 < p < 0.5; letters (mu) even
-// from 4 to 1024 (InputError otherwise). Uses oneTBB; the result does not depend on the number of
-// threads.
+// How letters are chosen on the degraded side. Both bounds are rigorous; quick is two to ten times
+// faster, and its sums differ from those of greedy by about 1 % either way.
+enum class Merging {
+  greedy,  // as published: always the pair that loses the least
+  quick,   // long lists are thinned by a pass that joins neighbours that hardly differ
+};
+
+// kind: upper_bound of what exact SC gets wrong, which is maximum likelihood given the earlier
+// bits. Ranges: 0 < p < 0.5; letters (mu) even from 4 to 1024 (InputError otherwise). Uses oneTBB;
+// the result does not depend on the number of threads.
 Reliability degrading_merge(BlockLength block_length, double p,
-                            unsigned letters = kDefaultMergeLetters);
+                            unsigned letters = kDefaultMergeLetters,
+                            Merging merging = Merging::quick);
 
 // kind: lower_bound. The same ranges.
 Reliability upgrading_merge(BlockLength block_length, double p,

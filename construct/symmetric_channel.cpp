@@ -106,6 +106,7 @@ class Removal {
     for (std::size_t node = (leaves_ + i) / 2; node > 0; node /= 2) decide(node);
   }
   std::size_t cheapest() const { return winners_[1]; }
+  double cheapest_cost() const { return costs_[winners_[1]]; }
   void remove(std::size_t i) {
     const Link link = links_[i];
     if (link.previous != count_) links_[link.previous].next = link.next;
@@ -141,6 +142,30 @@ std::vector<double> quick_entropies(const SymmetricChannel& w) {
   std::vector<double> entropies(w.size());
   for (std::size_t i = 0; i < w.size(); ++i) entropies[i] = quick_entropy(w[i]);
   return entropies;
+}
+
+// What a joined run may lose, as a share of the entropy that one letter of the final list holds on
+// average. It leaves a few times max_letters letters.
+constexpr double kCheapShare = 1e-5;
+
+void join_cheap_runs(SymmetricChannel& w, std::size_t max_letters) {
+  double total = 0;
+  for (const Letter& letter : w) total += quick_entropy(letter);
+  const double allowed = kCheapShare * total / static_cast<double>(max_letters);
+  std::size_t kept = 0;
+  double sum = quick_entropy(w[0]);
+  for (std::size_t i = 1; i < w.size(); ++i) {
+    const Letter both = joined(w[kept], w[i]);
+    const double after = sum + quick_entropy(w[i]);
+    if (quick_entropy(both) - after <= allowed) {
+      w[kept] = both;
+      sum = after;
+    } else {
+      w[++kept] = w[i];
+      sum = quick_entropy(w[i]);
+    }
+  }
+  w.resize(kept + 1);
 }
 
 }  // namespace
@@ -191,12 +216,17 @@ void degrade(SymmetricChannel& w, std::size_t max_letters) {
     const std::size_t previous = removal.previous(i);
     const std::size_t next = removal.next(i);
     w[previous] = joined(w[previous], w[i]);
-    entropies[previous] = quick_entropy(w[previous]);
+    entropies[previous] += entropies[i] + removal.cheapest_cost();
     removal.remove(i);
     if (removal.previous(previous) != removal.end()) removal.set_cost(previous, cost(previous));
     if (next != removal.end()) removal.set_cost(next, cost(next));
   }
   removal.keep_rest(w);
+}
+
+void degrade_quickly(SymmetricChannel& w, std::size_t max_letters) {
+  if (w.size() > 4 * max_letters) join_cheap_runs(w, max_letters);
+  degrade(w, max_letters);
 }
 
 void upgrade(SymmetricChannel& w, std::size_t max_letters) {

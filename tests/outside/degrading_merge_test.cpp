@@ -21,7 +21,8 @@ TEST(DegradingMerge, EqualsTableIOfTalAndVardy) {
     double sum;
   } rows[] = {{8, 5.096030e-03}, {16, 6.926762e-05}};
   for (const auto& row : rows) {
-    const Reliability reliability = degrading_merge(BlockLength::from_log2(20), 0.11, row.letters);
+    const Reliability reliability =
+        degrading_merge(BlockLength::from_log2(20), 0.11, row.letters, Merging::greedy);
     const auto sums = union_sums(reliability, freezing_order(reliability));
     EXPECT_NEAR(sums[sums.size() - 1 - 445340] / row.sum, 1, 0.005) << row.letters;
   }
