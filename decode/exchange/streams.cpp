@@ -6,8 +6,11 @@
 
 #include <algorithm>
 #include <cerrno>
+#include <charconv>
 #include <cstdio>
+#include <cstdlib>
 #include <cstring>
+#include <memory>
 
 #include "polar/digest.h"
 #include "polar/error.h"
@@ -24,6 +27,30 @@ std::string temporary_name(const std::string& path) {
   std::uint8_t random[6];
   randombytes_buf(random, sizeof random);
   return path + ".part-" + to_hex(Span<const std::uint8_t>(random, sizeof random));
+}
+
+// The descriptor of this process that a path stands for. Opening such a path anew would lose its
+// position, and renaming a file onto it would replace the device's name.
+std::optional<int> own_descriptor(const std::string& path) {
+  if (path == "/dev/stdout") return STDOUT_FILENO;
+  if (path == "/dev/stderr") return STDERR_FILENO;
+  for (const std::string folder : {"/dev/fd/", "/proc/self/fd/"}) {
+    if (path.compare(0, folder.size(), folder) != 0) continue;
+    int descriptor = -1;
+    const char* const end = path.data() + path.size();
+    const auto parsed = std::from_chars(path.data() + folder.size(), end, descriptor);
+    if (parsed.ec == std::errc() && parsed.ptr == end) return descriptor;
+  }
+  return std::nullopt;
+}
+
+// Where a symbolic link leads, so that the file behind it is replaced and not the link.
+std::string behind_links(const std::string& path) {
+  struct FreeMemory {
+    void operator()(char* memory) const { std::free(memory); }
+  };
+  const std::unique_ptr<char, FreeMemory> real(::realpath(path.c_str(), nullptr));
+  return real ? std::string(real.get()) : path;
 }
 
 }  // namespace
@@ -83,18 +110,24 @@ std::string read_file(const std::string& path) {
 }
 
 FileSink::FileSink(std::string path, FileAccess access, FileReplace replace)
-    : path_(std::move(path)), replace_(replace) {
+    : path_(std::move(path)), target_(behind_links(path_)), replace_(replace) {
+  if (const std::optional<int> own = own_descriptor(path_)) {
+    descriptor_ = ::fcntl(*own, F_DUPFD_CLOEXEC, 0);
+    if (descriptor_ < 0) fail(errno);
+    return;
+  }
+  if (path_.empty()) fail(ENOENT);
   const mode_t mode = access == FileAccess::secret ? 0600 : 0666;
   struct stat status {};
-  const bool exists = ::stat(path_.c_str(), &status) == 0;
+  const bool exists = ::stat(target_.c_str(), &status) == 0;
   if (exists && S_ISDIR(status.st_mode)) fail(EISDIR);
   if (exists && !S_ISREG(status.st_mode)) {
-    descriptor_ = ::open(path_.c_str(), O_WRONLY | O_CLOEXEC);
+    descriptor_ = ::open(target_.c_str(), O_WRONLY | O_CLOEXEC);
     if (descriptor_ < 0) fail(errno);
     return;
   }
   if (exists && replace_ == FileReplace::refuse_if_there) fail(EEXIST);
-  temporary_ = temporary_name(path_);
+  temporary_ = temporary_name(target_);
   descriptor_ = ::open(temporary_.c_str(), O_WRONLY | O_CREAT | O_EXCL | O_CLOEXEC, mode);
   if (descriptor_ < 0) {
     const int error = errno;
@@ -145,9 +178,9 @@ void FileSink::commit() {
   // link() instead of rename() where the target must not be there: no window between a check and
   // the act.
   if (replace_ == FileReplace::refuse_if_there) {
-    if (::link(temporary_.c_str(), path_.c_str()) != 0) fail(errno);
+    if (::link(temporary_.c_str(), target_.c_str()) != 0) fail(errno);
     ::unlink(temporary_.c_str());
-  } else if (::rename(temporary_.c_str(), path_.c_str()) != 0) {
+  } else if (::rename(temporary_.c_str(), target_.c_str()) != 0) {
     fail(errno);
   }
   temporary_.clear();

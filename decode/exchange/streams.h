@@ -102,7 +102,8 @@ class FileSink : public ByteSink {
   void flush();
   [[noreturn]] void fail(int error) const;
 
-  std::string path_;
+  std::string path_;       // as the user calls it
+  std::string target_;     // behind symbolic links
   std::string temporary_;  // empty where the target is written straight
   FileReplace replace_;
   int descriptor_ = -1;
