@@ -174,6 +174,28 @@ void hand_on(const ReconcileWork& work, const Cut& cut, const ReconcileSinks& si
   }
 }
 
+// The tags of the receipt tell the key that it was made of from another run's of the same size.
+void require_tagged(const KeySource& provisional, const Receipt& receipt,
+                    const RunControl& control) {
+  const std::size_t bits = receipt.block_length;
+  KeyWords block(words_for(bits));
+  KeyBytes packed(bytes_for(bits));
+  std::uint64_t next = 0;
+  for (const Group& group : receipt.groups) {
+    TagHasher hasher(group.hash_key);
+    for (std::uint64_t b = 0; b < group.accepted; ++b, ++next) {
+      if (control.stopped()) throw Interrupted();
+      provisional.read(next * bits, bits, block);
+      pack_bits(block, bits, packed);
+      hasher.update(packed);
+    }
+    if (!tags_equal(hasher.finish(), group.tag)) {
+      throw InputError("key '" + provisional.name() +
+                       "' is not the provisional key that the receipt was made of");
+    }
+  }
+}
+
 void require_answers(const Verdict& verdict, const Receipt& receipt, std::string_view receipt_text,
                      const std::string& verdict_name) {
   if (verdict.receipt != sha256(receipt_text) || verdict.session != receipt.session) {
@@ -268,6 +290,7 @@ ConfirmSummary confirm(const KeySource& provisional, std::string_view receipt_te
                      std::to_string(provisional.bits()) + " bits, but the receipt accepted " +
                      std::to_string(accepted) + " blocks of " + std::to_string(bits));
   }
+  require_tagged(provisional, receipt, control);
   ConfirmSummary summary;
   summary.groups = receipt.groups.size();
   summary.test_only = receipt.test_only || verdict.test_only;

@@ -79,7 +79,8 @@ struct ConfirmSummary {
 };
 
 // Drops the groups that the verdict rejects from the provisional key.
-// Throws InputError when the three do not belong together.
+// Throws InputError when the three do not belong together: the verdict names the receipt's digest,
+// and the provisional key shows the receipt's tags.
 ConfirmSummary confirm(const KeySource& provisional, std::string_view receipt_text,
                        std::string_view receipt_name, std::string_view verdict_text,
                        std::string_view verdict_name, KeySink& settled,
