@@ -150,6 +150,7 @@ SettleSummary settle(const Code& code, const KeySource& key, ByteSource& message
   const Receipt receipt = receipt_from_json(receipt_text, receipt_name);
   MessageReader reader(message, code);
   require_same_length(key, reader.header(), message.name());
+  require_a_block(key, code.block_length());
   require_belongs(receipt, reader, read_through(reader), code, std::string(receipt_name));
 
   const Cut& cut = reader.cut();
