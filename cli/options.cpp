@@ -36,6 +36,14 @@ void set_threads(std::uint64_t threads) {
                                                 static_cast<std::size_t>(threads));
 }
 
+// Where a file is or would be, however its name is spelled; the name itself where nobody can tell.
+std::filesystem::path place(const std::string& name) {
+  std::error_code error;
+  std::filesystem::path path = std::filesystem::absolute(name, error);
+  if (!error) path = std::filesystem::weakly_canonical(path, error);
+  return error ? std::filesystem::path(name) : path;
+}
+
 std::string wrapped(const std::string& text, std::size_t indent) {
   constexpr std::size_t kColumns = 96;
   std::string out;
@@ -242,10 +250,7 @@ void require_distinct_files(const std::vector<std::string>& inputs,
     struct stat one {};
     struct stat two {};
     const bool there = ::stat(a.c_str(), &one) == 0 && ::stat(b.c_str(), &two) == 0;
-    if (!there) {
-      return std::filesystem::weakly_canonical(std::filesystem::absolute(a)) ==
-             std::filesystem::weakly_canonical(std::filesystem::absolute(b));
-    }
+    if (!there) return place(a) == place(b);
     return S_ISREG(one.st_mode) && one.st_dev == two.st_dev && one.st_ino == two.st_ino;
   };
   for (std::size_t i = 0; i < outputs.size(); ++i) {
