@@ -1,0 +1,74 @@
+// Runs the command as a user does, in a fresh temporary folder, and looks at what it leaves behind.
+//
+// No shell in between: arguments reach the program as they stand, and its exit status is its own.
+#pragma once
+
+#include <sys/types.h>
+
+#include <cstdint>
+#include <string>
+#include <vector>
+
+namespace frostline::testing {
+
+using Arguments = std::vector<std::string>;
+
+// a, then b.
+Arguments operator+(Arguments a, const Arguments& b);
+
+// A temporary folder that is removed with all it holds.
+class Folder {
+ public:
+  Folder();
+  ~Folder();
+  Folder(const Folder&) = delete;
+  Folder& operator=(const Folder&) = delete;
+
+  const std::string& path() const { return path_; }
+  std::string path(const std::string& name) const { return path_ + "/" + name; }
+  // Names of what the folder holds, sorted.
+  std::vector<std::string> names() const;
+  bool holds(const std::string& name) const;
+  std::string read(const std::string& name) const;
+  void write(const std::string& name, const std::string& contents) const;
+  void copy(const std::string& from, const std::string& to) const;
+  void remove(const std::string& name) const;
+  // Permission bits.
+  unsigned mode(const std::string& name) const;
+
+ private:
+  std::string path_;
+};
+
+struct CommandResult {
+  int status = -1;  // exit status; 128 + number of the signal that ended it
+  std::string out;
+  std::string err;
+};
+
+// The command while it runs: stdout and stderr are pipes.
+class RunningCommand {
+ public:
+  // stdout_name: a file of the folder that takes stdout in place of the pipe.
+  RunningCommand(const Folder& folder, const Arguments& arguments,
+                 const std::string& stdout_name = "");
+  ~RunningCommand();
+  RunningCommand(const RunningCommand&) = delete;
+  RunningCommand& operator=(const RunningCommand&) = delete;
+
+  void send(int signal) const;
+  // Closes the reading end of the command's stdout, as `head` does when it has seen enough.
+  void close_stdout();
+  // Reads both streams to their end and waits.
+  CommandResult finish();
+
+ private:
+  pid_t process_ = -1;
+  int out_ = -1;
+  int err_ = -1;
+};
+
+CommandResult run_command(const Folder& folder, const Arguments& arguments,
+                          const std::string& stdout_name = "");
+
+}  // namespace frostline::testing
