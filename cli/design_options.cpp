@@ -17,7 +17,7 @@ constexpr std::uint64_t kNoSuchWidth = 1000;
 void add_code_options(Options& options) {
   options.value("arithmetic", "A", "of the decoder: exact, planes:W or integer:Q:A (planes:3)")
       .value("exact-levels", "K", "levels of gaussian that are tracked exactly, 0 to 12 (6)")
-      .value("merge-letters", "MU", "output letters of degrading-merge, even, 4 to 1024 (16)")
+      .value("merge-letters", "MU", "output letters of degrading-merge, even, 4 to 1024 (32)")
       .value("order", "ORDER", "reliability, or weighted:ALPHA to prefer heavy rows (reliability)")
       .value("check-bits", "C", "0, 6, 8, 11, 16 or 24 (11 up to N = 2^11, 16 up to 2^13, then 24)")
       .value("precoding", "NAME", "none or state8 (none)");

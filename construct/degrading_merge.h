@@ -11,7 +11,7 @@
 
 namespace frostline {
 
-constexpr unsigned kDefaultMergeLetters = 16;
+constexpr unsigned kDefaultMergeLetters = 32;
 
 // How letters are chosen on the degraded side. Both bounds are rigorous; quick is two to ten times
 // faster, and its sums differ from those of greedy by about 1 % either way.

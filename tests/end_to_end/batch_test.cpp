@@ -226,7 +226,7 @@ TEST(Batch, RefusesAnEditedDesignAndAnotherIndexVersion) {
   const std::string file = "sets/n64/qber-0.020-fer-0.1.design.json";
   const std::string whole = folder.read(file);
   std::string edited = whole;
-  edited.replace(edited.find("\"qber\": 0.02"), 12, "\"qber\": 0.03");
+  edited.replace(edited.find("\"seed\": null"), 12, "\"seed\": 4711");
   folder.write(file, edited);
   expect_refused("edited or damaged");
   folder.write(file, whole);
