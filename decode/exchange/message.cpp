@@ -13,6 +13,7 @@ constexpr std::size_t kMagicBytes = 8;
 constexpr char kMagic[kMagicBytes + 1] = "frostsyn";
 constexpr std::uint32_t kVersion = 1;
 constexpr std::uint32_t kTestOnlyFlag = 1;
+constexpr std::size_t kCrcBytes = 4;
 constexpr std::size_t kHeaderBytes = kMagicBytes + 4 + 4 + 16 + 32 + 4 + 4 + 8 + 4;
 
 // Appends unsigned numbers, least significant byte first.
@@ -81,11 +82,15 @@ BitString joined(const MessageRecord& record) {
 }  // namespace
 
 MessageWriter::MessageWriter(ByteSink& sink, const MessageHeader& header) : sink_(&sink) {
-  put(encode_header(header));
+  put_checked(encode_header(header));
+}
+
+void MessageWriter::put_checked(Span<const std::uint8_t> bytes) {
+  total_.update(bytes.subspan(0, bytes.size() - kCrcBytes));
+  put(bytes);
 }
 
 void MessageWriter::put(Span<const std::uint8_t> bytes) {
-  total_.update(bytes);
   digest_.update(bytes);
   bytes_ += bytes.size();
   sink_->write(bytes);
@@ -96,7 +101,7 @@ void MessageWriter::write(unsigned lanes, const MessageRecord& record) {
   encoder.number(std::uint32_t{lanes});
   encoder.raw(bits_to_packed(joined(record)));
   encoder.number(crc32c(encoder.bytes()));
-  put(encoder.bytes());
+  put_checked(encoder.bytes());
   ++batches_;
 }
 
@@ -104,10 +109,9 @@ Sha256 MessageWriter::finish() {
   Encoder mark;
   mark.number(std::uint32_t{0});
   mark.number(batches_);
+  total_.update(mark.bytes());
+  mark.number(total_.value());
   put(mark.bytes());
-  Encoder crc;
-  crc.number(total_.value());
-  put(crc.bytes());
   return digest_.finish();
 }
 
@@ -129,6 +133,7 @@ MessageReader::MessageReader(ByteSource& source, const Code& code)
   header_.check_bits = decoder.number<std::uint32_t>();
   const Span<const std::uint8_t> covered(bytes.data(), kHeaderBytes);
   if (decoder.number<std::uint32_t>() != crc32c(covered)) fail("the header is damaged");
+  total_.update(covered);
   if (version != kVersion) {
     fail("message version " + std::to_string(version) + "; this program reads version " +
          std::to_string(kVersion));
@@ -151,7 +156,6 @@ void MessageReader::fail(const std::string& what) const {
 
 void MessageReader::get(Span<std::uint8_t> bytes) {
   if (source_->read(bytes) != bytes.size()) fail("truncated");
-  total_.update(bytes);
   digest_.update(bytes);
 }
 
@@ -160,13 +164,13 @@ MessageRecord MessageReader::next() {
   const std::size_t syndrome_bits = frozen_count_ * batch.lanes;
   const std::size_t check_count = std::size_t{header_.check_bits} * batch.lanes;
   const std::size_t payload = bytes_for(syndrome_bits + check_count);
-  std::vector<std::uint8_t> bytes(4 + payload + 4);
+  std::vector<std::uint8_t> bytes(4 + payload + kCrcBytes);
   get(bytes);
   const std::string where = "record " + std::to_string(batches_ + 1);
-  Decoder tail(Span<const std::uint8_t>(bytes).subspan(4 + payload, 4));
-  if (tail.number<std::uint32_t>() != crc32c({bytes.data(), 4 + payload})) {
-    fail(where + " is damaged");
-  }
+  const Span<const std::uint8_t> covered(bytes.data(), 4 + payload);
+  Decoder tail(Span<const std::uint8_t>(bytes).subspan(covered.size(), kCrcBytes));
+  if (tail.number<std::uint32_t>() != crc32c(covered)) fail(where + " is damaged");
+  total_.update(covered);
   if (Decoder(bytes).number<std::uint32_t>() != batch.lanes) fail(where + ": wrong lanes");
   const Span<const std::uint8_t> packed = Span<const std::uint8_t>(bytes).subspan(4, payload);
   const BitString padded = bits_from_packed(packed, 8 * payload);
@@ -181,6 +185,7 @@ MessageRecord MessageReader::next() {
 Sha256 MessageReader::finish() {
   std::array<std::uint8_t, 12> mark{};
   get(mark);
+  total_.update(mark);
   const std::uint32_t total = total_.value();
   std::array<std::uint8_t, 4> crc{};
   get(crc);

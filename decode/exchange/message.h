@@ -4,7 +4,11 @@
 // key bits, check bits, CRC-32C. Record: lanes of this batch, then M lanes syndrome bits (rows in
 // increasing index, within a row bit l for lane l) and c lanes check bits (first-sent bit of the
 // register first) as one packed string, pad bits zero, CRC-32C. End mark: 0, number of batches,
-// CRC-32C over everything before it; nothing after it. Written and read as a stream.
+// CRC-32C over everything before it but the CRC-32C fields; nothing after it. Written and read as a
+// stream.
+//
+// The total leaves those fields out because a part that is followed by its own CRC brings any
+// register to the same value: a total over them would not know the records, nor their order.
 #pragma once
 
 #include <array>
@@ -49,6 +53,8 @@ class MessageWriter {
 
  private:
   void put(Span<const std::uint8_t> bytes);
+  // A part that ends with its own CRC-32C.
+  void put_checked(Span<const std::uint8_t> bytes);
 
   ByteSink* sink_;
   Crc32c total_;
