@@ -72,7 +72,8 @@ void require_consistent_groups(const Receipt& receipt, const std::string& name) 
     next_block = group.first_block + group.block_count;
     const std::size_t accepted =
         receipt.accepted.slice(group.first_block, group.block_count).count();
-    if (accepted == 0 || accepted != group.accepted) {
+    if (accepted == 0) throw InputError(where + ": none of its blocks is accepted");
+    if (accepted != group.accepted) {
       throw InputError(where + ": " + std::to_string(group.accepted) +
                        " accepted blocks, but the accept bits tell " + std::to_string(accepted));
     }
