@@ -4,25 +4,17 @@
 #include <poll.h>
 #include <signal.h>
 #include <spawn.h>
-#include <sys/stat.h>
 #include <sys/wait.h>
 #include <unistd.h>
 
-#include <algorithm>
 #include <array>
 #include <cerrno>
-#include <cstdlib>
-#include <filesystem>
-#include <fstream>
-#include <stdexcept>
 #include <system_error>
 
 extern char** environ;
 
 namespace frostline::testing {
 namespace {
-
-namespace fs = std::filesystem;
 
 void require(bool good, const char* what, int error = errno) {
   if (!good) throw std::system_error(error, std::generic_category(), what);
@@ -50,53 +42,6 @@ bool take(int descriptor, std::string& text) {
 Arguments operator+(Arguments a, const Arguments& b) {
   a.insert(a.end(), b.begin(), b.end());
   return a;
-}
-
-Folder::Folder() {
-  std::string pattern = (fs::temp_directory_path() / "frostline-test-XXXXXX").string();
-  require(::mkdtemp(pattern.data()) != nullptr, "mkdtemp");
-  path_ = pattern;
-}
-
-Folder::~Folder() {
-  std::error_code ignored;  // a destructor must not throw; a folder left in /tmp does no harm
-  fs::remove_all(path_, ignored);
-}
-
-std::vector<std::string> Folder::names() const {
-  std::vector<std::string> names;
-  for (const auto& entry : fs::directory_iterator(path_)) {
-    names.push_back(entry.path().filename().string());
-  }
-  std::sort(names.begin(), names.end());
-  return names;
-}
-
-bool Folder::holds(const std::string& name) const { return fs::exists(path(name)); }
-
-std::string Folder::read(const std::string& name) const {
-  std::ifstream file(path(name), std::ios::binary);
-  if (!file) throw std::runtime_error("the test cannot read " + path(name));
-  return {std::istreambuf_iterator<char>(file), std::istreambuf_iterator<char>()};
-}
-
-void Folder::write(const std::string& name, const std::string& contents) const {
-  std::ofstream file(path(name), std::ios::binary | std::ios::trunc);
-  file << contents;
-  file.close();
-  if (!file) throw std::runtime_error("the test cannot write " + path(name));
-}
-
-void Folder::copy(const std::string& from, const std::string& to) const {
-  fs::copy_file(path(from), path(to), fs::copy_options::overwrite_existing);
-}
-
-void Folder::remove(const std::string& name) const { fs::remove_all(path(name)); }
-
-unsigned Folder::mode(const std::string& name) const {
-  struct stat status {};
-  require(::stat(path(name).c_str(), &status) == 0, "stat");
-  return status.st_mode & 07777U;
 }
 
 RunningCommand::RunningCommand(const Folder& folder, const Arguments& arguments,

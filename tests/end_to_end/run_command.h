@@ -1,13 +1,14 @@
-// Runs the command as a user does, in a fresh temporary folder, and looks at what it leaves behind.
+// Runs the command as a user does, in a folder of its own.
 //
 // No shell in between: arguments reach the program as they stand, and its exit status is its own.
 #pragma once
 
 #include <sys/types.h>
 
-#include <cstdint>
 #include <string>
 #include <vector>
+
+#include "tests/support/folder.h"
 
 namespace frostline::testing {
 
@@ -15,30 +16,6 @@ using Arguments = std::vector<std::string>;
 
 // a, then b.
 Arguments operator+(Arguments a, const Arguments& b);
-
-// A temporary folder that is removed with all it holds.
-class Folder {
- public:
-  Folder();
-  ~Folder();
-  Folder(const Folder&) = delete;
-  Folder& operator=(const Folder&) = delete;
-
-  const std::string& path() const { return path_; }
-  std::string path(const std::string& name) const { return path_ + "/" + name; }
-  // Names of what the folder holds, sorted.
-  std::vector<std::string> names() const;
-  bool holds(const std::string& name) const;
-  std::string read(const std::string& name) const;
-  void write(const std::string& name, const std::string& contents) const;
-  void copy(const std::string& from, const std::string& to) const;
-  void remove(const std::string& name) const;
-  // Permission bits.
-  unsigned mode(const std::string& name) const;
-
- private:
-  std::string path_;
-};
 
 struct CommandResult {
   int status = -1;  // exit status; 128 + number of the signal that ended it
