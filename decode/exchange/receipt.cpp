@@ -37,6 +37,17 @@ bool get_bool(const Json& object, const char* key, const std::string& where) {
   return object.at(key).get<bool>();
 }
 
+// Under a hash key whose r is zero after clamping (RFC 8439, 2.5.1) every string has the same tag:
+// one that comes up with probability 2^-106, or from somebody who does not know the key bits.
+bool hashes_nothing(const HashKey& key) {
+  static const std::uint8_t kClamp[16] = {255, 255, 255, 15, 252, 255, 255, 15,
+                                          252, 255, 255, 15, 252, 255, 255, 15};
+  for (std::size_t i = 0; i < 16; ++i) {
+    if ((key[i] & kClamp[i]) != 0) return false;
+  }
+  return true;
+}
+
 Json group_to_json(const Group& group) {
   Json object;
   object["first_block"] = group.first_block;
@@ -54,6 +65,7 @@ Group group_from_json(const Json& object, const std::string& where) {
   group.block_count = get_unsigned(object, "blocks", where);
   group.accepted = get_unsigned(object, "accepted", where);
   group.hash_key = get_bytes<HashKey>(object, "hash_key", where);
+  if (hashes_nothing(group.hash_key)) throw InputError(where + ": its hash key hashes nothing");
   group.tag = get_bytes<Tag>(object, "tag", where);
   return group;
 }

@@ -39,7 +39,8 @@ struct Receipt {
 
 std::string receipt_to_json(const Receipt& receipt);
 // Throws InputError "NAME: ..." when the text is no receipt or contradicts itself: counts that do
-// not fit, groups that overlap, an accepted block in no group.
+// not fit, groups that overlap, an accepted block in no group, a hash key under which all tags are
+// alike.
 Receipt receipt_from_json(std::string_view text, std::string_view name);
 
 struct Verdict {

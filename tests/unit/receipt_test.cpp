@@ -124,6 +124,18 @@ TEST(Receipt, ThatContradictsItselfIsRefused) {
             "r: group 0: 'tag' is not 16 bytes in hexadecimal");
   EXPECT_EQ(spoiled([](Json& r) { r["groups"][0]["hash_key"] = std::string(64, 'g'); }),
             "r: group 0: 'hash_key' is not 32 bytes in hexadecimal");
+  // Poly1305 with r = 0 gives every string the same tag, whatever s is; so do the bits that
+  // clamping takes away (RFC 8439, 2.5.1).
+  for (const std::string r0 :
+       {"00000000000000000000000000000000", "000000f0030000f0030000f0030000f0"}) {
+    EXPECT_EQ(spoiled([&](Json& r) { r["groups"][0]["hash_key"] = r0 + std::string(32, '7'); }),
+              "r: group 0: its hash key hashes nothing");
+  }
+  EXPECT_EQ(spoiled([](Json& r) {
+              r["groups"][0]["hash_key"] =
+                  "00000000000000000400000000000000" + std::string(32, '7');
+            }),
+            "no error");
   EXPECT_EQ(spoiled([](Json& r) { r["groups"][0].erase("tag"); }),
             "r: group 0: key 'tag' is missing");
   EXPECT_EQ(spoiled([](Json& r) { r["groups"][0]["note"] = 1; }), "r: group 0: unknown key 'note'");
