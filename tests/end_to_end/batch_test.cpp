@@ -169,7 +169,8 @@ TEST(Batch, ShippedLibraryIsWhatTheScriptMakes) {
   const Json index = Json::parse(shipped.at("index.json"));
   std::map<std::string, Json> by_file;
   for (const Json& entry : index.at("designs")) by_file[entry.at("file")] = entry;
-  for (const Json& entry : Json::parse(part.at("index.json")).at("designs")) {
+  const Json of_part = Json::parse(part.at("index.json"));
+  for (const Json& entry : of_part.at("designs")) {
     EXPECT_EQ(entry, by_file[entry.at("file")]);
   }
 }
