@@ -19,6 +19,9 @@ namespace {
 
 namespace po = boost::program_options;
 
+// What Boost calls the arguments without a dash: nothing that a user types for an option.
+constexpr const char* kPositional = "arguments without a dash";
+
 // The name and the dash-letter form of Boost ("output,o").
 std::string long_name(const std::string& name) { return name.substr(0, name.find(',')); }
 
@@ -141,9 +144,9 @@ bool Options::parse(const std::vector<std::string>& arguments) {
     }
   }
   po::options_description all = description;
-  all.add_options()("positional", po::value<std::vector<std::string>>());
+  all.add_options()(kPositional, po::value<std::vector<std::string>>());
   po::positional_options_description positional;
-  positional.add("positional", -1);
+  positional.add(kPositional, -1);
   po::variables_map map;
   try {
     // No guessing of shortened names: a script must not change its meaning with the next option.
@@ -170,8 +173,8 @@ bool Options::parse(const std::vector<std::string>& arguments) {
     print_help();
     return false;
   }
-  const auto words = map.count("positional") ? map["positional"].as<std::vector<std::string>>()
-                                             : std::vector<std::string>{};
+  const auto words = map.count(kPositional) ? map[kPositional].as<std::vector<std::string>>()
+                                            : std::vector<std::string>{};
   if (words.size() > positionals_.size()) {
     throw InputError(command_ + ": unexpected argument '" + words[positionals_.size()] + "'");
   }

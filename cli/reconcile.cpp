@@ -109,8 +109,10 @@ void print_account(const Design& design, const ReconcileSummary& summary, const 
                          ", the design predicts " + prediction_sentence(design.predicted));
   if (summary.accepted > 0) {
     table.row("errors corrected", grouped(summary.errors_corrected))
-        .row("observed QBER", percent(summary.accepted_qber, 3) +
-                                  " in accepted blocks (biased low: bad blocks fail)");
+        .row("observed QBER",
+             percent(summary.accepted_qber, 3) +
+                 (summary.failed() > 0 ? " in accepted blocks (biased low: bad blocks fail)"
+                                       : " in all blocks"));
   }
   if (const auto& all = summary.all_blocks_qber; all && summary.failed() > 0) {
     table.row("QBER of all blocks", percent(all->qber, 3) + " (" + percent(all->low, 3) + " to " +

@@ -81,7 +81,11 @@ class BadInput : public ::testing::Test {
     EXPECT_EQ(std::count(result.err.begin(), result.err.end(), '\n'), 1) << words << result.err;
     EXPECT_EQ(result.err.rfind("frostline: ", 0), 0U) << words << result.err;
     EXPECT_EQ(result.err.find("unexpected:"), std::string::npos) << words << result.err;
-    EXPECT_EQ(folder_->names(), names_) << words << "left a file behind";
+    for (const std::string& name : folder_->names()) {
+      const bool expected = std::find(names_.begin(), names_.end(), name) != names_.end();
+      EXPECT_TRUE(expected) << words << "left " << name << " behind";
+      if (!expected) folder_->remove(name);  // so that it fails this case alone
+    }
     if (result.err.size() < 12) return result.err;
     return result.err.substr(11, result.err.size() - 12);
   }
@@ -139,6 +143,8 @@ TEST_F(BadInput, UsageIsToldInTheProgramsWords) {
       {{"syndrome", "d.json", "a", "-o", "out", "-o", "out2"}, "more than once"},
       {{"syndrome", "d.json", "a", "-o", "out", "--lane", "4"}, "option '--lane'"},
       {{"syndrome", "d.json", "a", "-o", "out", "--json=yes"}, "'--json'"},
+      {{"syndrome", "--positional", "d.json", "--positional", "a", "-o", "out"},
+       "option '--positional'"},
       {{"syndrome", "d.json"}, "missing KEY"},
       {{"syndrome", "d.json", "a"}, "missing -o, --output FILE"},
       {{"syndrome", "d.json", "a", "b", "-o", "out"}, "unexpected argument 'b'"},
