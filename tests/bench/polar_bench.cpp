@@ -1,6 +1,7 @@
 // Transform, transposition and syndrome, beside memcpy of the same bytes in the same run.
 #include <benchmark/benchmark.h>
 
+#include <chrono>
 #include <cstring>
 
 #include "polar/lanes.h"
@@ -47,6 +48,30 @@ void Transform(benchmark::State& state) {
   report(state, block_length.bits() * lanes);
 }
 BENCHMARK(Transform)->Args({16, 1})->Args({20, 1})->Args({24, 1})->Args({10, 512})->Args({16, 64});
+
+// Transform and memcpy of the same bytes turn about in one run; the counter times_memcpy tells how
+// many times longer the transform takes.
+void TransformBesideMemcpy(benchmark::State& state) {
+  using Clock = std::chrono::steady_clock;
+  const BlockLength block_length = BlockLength::from_log2(static_cast<unsigned>(state.range(0)));
+  KeyWords rows = random_words(block_length.bits());
+  KeyWords copy(rows.size());
+  Clock::duration transforming{};
+  Clock::duration copying{};
+  for (auto _ : state) {
+    const auto begin = Clock::now();
+    polar_transform(rows, block_length, 1);
+    benchmark::ClobberMemory();
+    const auto between = Clock::now();
+    std::memcpy(copy.data(), rows.data(), rows.size() * 8);
+    benchmark::ClobberMemory();
+    transforming += between - begin;
+    copying += Clock::now() - between;
+  }
+  state.counters["times_memcpy"] =
+      static_cast<double>(transforming.count()) / static_cast<double>(copying.count());
+}
+BENCHMARK(TransformBesideMemcpy)->Arg(16)->Arg(20)->Arg(24);
 
 void LanesToBlocks(benchmark::State& state) {
   const BlockLength block_length = BlockLength::from_log2(static_cast<unsigned>(state.range(0)));
