@@ -17,11 +17,17 @@ void ReferenceBatchDecoder::decode(Span<const std::uint64_t> difference_rows, un
   KeyWords blocks(words_for(bits * lanes));
   lanes_to_blocks(difference_rows, block_length, lanes, blocks);
   std::vector<BitString> errors(lanes);
-  tbb::parallel_for(0U, lanes, [&](unsigned lane) {
-    BitString difference(bits);
-    copy_bits(blocks, bits * lane, difference.words(), 0, bits);
-    errors[lane] = decode_sc(code_, arithmetic_, qber_, difference).errors;
-  });
+  // A context of its own: a run around this one that is cancelled, by an exception in another
+  // batch, would cancel the loop too and leave lanes that nobody decoded.
+  tbb::task_group_context context(tbb::task_group_context::isolated);
+  tbb::parallel_for(
+      0U, lanes,
+      [&](unsigned lane) {
+        BitString difference(bits);
+        copy_bits(blocks, bits * lane, difference.words(), 0, bits);
+        errors[lane] = decode_sc(code_, arithmetic_, qber_, difference).errors;
+      },
+      context);
   // Blocks shorter than a word share words, so they are put together by one thread.
   for (unsigned lane = 0; lane < lanes; ++lane) {
     copy_bits(errors[lane].words(), 0, blocks, bits * lane, bits);

@@ -1,5 +1,6 @@
 // Sender and receiver together, in memory, with decoders that are right, wrong, slow or broken.
 #include <gtest/gtest.h>
+#include <tbb/parallel_for.h>
 
 #include <atomic>
 #include <functional>
@@ -191,6 +192,23 @@ TEST_F(Exchange, LetsABrokenDecodersErrorThrough) {
                  throw std::runtime_error("broken");
                }),
                std::runtime_error);
+}
+
+// A damaged record cancels the run while other batches are being decoded.
+TEST_F(Exchange, ABatchIsDecodedToItsEndInACancelledRun) {
+  const auto decoder = make_batch_decoder(design_);
+  const std::size_t words = words_for(kLength * kLanes);
+  const KeyWords differences(words);
+  KeyWords errors(words, ~std::uint64_t{0});
+  tbb::task_group_context context;
+  tbb::parallel_for(
+      0, 1,
+      [&](int) {
+        context.cancel_group_execution();
+        decoder->decode(differences, kLanes, errors);
+      },
+      context);
+  EXPECT_EQ(count_ones(errors), 0U);
 }
 
 TEST_F(Exchange, HashKeysAreFresh) {
