@@ -75,7 +75,10 @@ class Merger {
       leaves(child, log_p.subspan(half, half));
     };
     if (half >= kSmallestTask) {
-      tbb::parallel_invoke(below_minus, below_plus);
+      // Isolated: a cancelled run around this one must not leave half of the indices without a
+      // value.
+      tbb::task_group_context context(tbb::task_group_context::isolated);
+      tbb::parallel_invoke(below_minus, below_plus, context);
     } else {
       below_minus();
       below_plus();

@@ -55,7 +55,9 @@ void leaves(const Density& density, Span<double> log_p) {
   const auto left = [&] { leaves(density.f(), log_p.subspan(0, half)); };
   const auto right = [&] { leaves(density.g(), log_p.subspan(half, half)); };
   if (half >= kSmallestTask) {
-    tbb::parallel_invoke(left, right);
+    // Isolated: a cancelled run around this one must not leave half of the indices without a value.
+    tbb::task_group_context context(tbb::task_group_context::isolated);
+    tbb::parallel_invoke(left, right, context);
   } else {
     left();
     right();
