@@ -26,21 +26,29 @@ constexpr NamedTarget kTargets[] = {
     {HWY_EMU128, "scalar"},  {HWY_SCALAR, "scalar"},
 };
 
-bool usable(std::int64_t target) { return (HWY_TARGETS & hwy::SupportedTargets() & target) != 0; }
+// Targets that this build has code for and this machine runs, asked before any are excluded.
+std::int64_t machine_targets() {
+  static const std::int64_t targets = HWY_TARGETS & hwy::SupportedTargets();
+  return targets;
+}
 
-}  // namespace
-
-std::vector<std::string> simd_names() {
+std::vector<std::string> names_among(std::int64_t targets) {
   std::vector<std::string> names;
   for (const NamedTarget& entry : kTargets) {
-    if (usable(entry.target) && (names.empty() || names.back() != entry.name)) {
+    if ((targets & entry.target) != 0 && (names.empty() || names.back() != entry.name)) {
       names.emplace_back(entry.name);
     }
   }
   return names;
 }
 
-std::string simd_in_use() { return simd_names().front(); }
+}  // namespace
+
+std::vector<std::string> simd_names() { return names_among(machine_targets()); }
+
+std::string simd_in_use() {
+  return names_among(machine_targets() & hwy::SupportedTargets()).front();
+}
 
 void force_simd(std::string_view name) {
   const std::vector<std::string> names = simd_names();
@@ -54,9 +62,14 @@ void force_simd(std::string_view name) {
   bool reached = false;
   for (const NamedTarget& entry : kTargets) {
     reached = reached || name == entry.name;
-    if (reached && usable(entry.target)) allowed |= entry.target;
+    if (reached) allowed |= machine_targets() & entry.target;
   }
   hwy::SetSupportedTargetsForTest(allowed);
+}
+
+void reset_simd() {
+  machine_targets();
+  hwy::SetSupportedTargetsForTest(0);
 }
 
 }  // namespace frostline

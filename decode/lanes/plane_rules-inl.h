@@ -1,0 +1,222 @@
+// f and g of planes:2 and planes:3 on rows of bits: the same formulas for vectors and for words.
+//
+// A node's messages have one of four shapes. On a BSC all channel messages are one positive half
+// unit (constant: nothing is stored). The g below a constant node gives magnitude 0 or 1 without
+// sign (one); the g below that a sign and magnitudes up to 2 (two); then up to 2^W - 1. f keeps the
+// shape.
+//
+// Included once a target, inside Highway's namespace; no include guard of the usual kind.
+#if defined(FROSTLINE_PLANE_RULES_INL_H) == defined(HWY_TARGET_TOGGLE)
+#ifdef FROSTLINE_PLANE_RULES_INL_H
+#undef FROSTLINE_PLANE_RULES_INL_H
+#else
+#define FROSTLINE_PLANE_RULES_INL_H
+#endif
+
+#include <hwy/highway.h>
+
+HWY_BEFORE_NAMESPACE();
+namespace frostline {
+namespace HWY_NAMESPACE {
+namespace hn = hwy::HWY_NAMESPACE;
+
+// Logic of three inputs. Table: bit 4a + 2b + c of it is the result, as in AVX-512.
+constexpr int kXor3 = 0x96;
+constexpr int kMajority = 0xE8;
+constexpr int kSelect = 0xCA;             // a ? b : c
+constexpr int kMajorityNotSecond = 0xB2;  // majority(a, ~b, c)
+constexpr int kAndNotThird = 0x40;        // a & b & ~c
+constexpr int kOrAndNot = 0xF4;           // a | (b & ~c)
+constexpr int kAndXor = 0x60;             // a & (b ^ c)
+
+template <int kTable, typename V>
+HWY_INLINE V TernaryByTwos(V a, V b, V c) {
+  switch (kTable) {
+    case kXor3:
+      return hn::Xor(hn::Xor(a, b), c);
+    case kMajority: {
+      return hn::Or(hn::And(a, b), hn::And(hn::Xor(a, b), c));
+    }
+    case kSelect:
+      return hn::Or(hn::And(a, b), hn::AndNot(a, c));
+    case kMajorityNotSecond:
+      return hn::Or(hn::AndNot(b, hn::Or(a, c)), hn::And(a, c));
+    case kAndNotThird:
+      return hn::AndNot(c, hn::And(a, b));
+    case kOrAndNot:
+      return hn::Or(a, hn::AndNot(c, b));
+    default:  // kAndXor
+      return hn::And(a, hn::Xor(b, c));
+  }
+}
+
+#if HWY_TARGET == HWY_AVX3 || HWY_TARGET == HWY_AVX3_DL
+template <int kTable>
+HWY_INLINE hn::Vec512<std::uint64_t> Ternary(hn::Vec512<std::uint64_t> a,
+                                             hn::Vec512<std::uint64_t> b,
+                                             hn::Vec512<std::uint64_t> c) {
+  return hn::Vec512<std::uint64_t>{_mm512_ternarylogic_epi64(a.raw, b.raw, c.raw, kTable)};
+}
+template <int kTable>
+HWY_INLINE hn::Vec256<std::uint64_t> Ternary(hn::Vec256<std::uint64_t> a,
+                                             hn::Vec256<std::uint64_t> b,
+                                             hn::Vec256<std::uint64_t> c) {
+  return hn::Vec256<std::uint64_t>{_mm256_ternarylogic_epi64(a.raw, b.raw, c.raw, kTable)};
+}
+template <int kTable, std::size_t kLanes>
+HWY_INLINE hn::Vec128<std::uint64_t, kLanes> Ternary(hn::Vec128<std::uint64_t, kLanes> a,
+                                                     hn::Vec128<std::uint64_t, kLanes> b,
+                                                     hn::Vec128<std::uint64_t, kLanes> c) {
+  return hn::Vec128<std::uint64_t, kLanes>{_mm_ternarylogic_epi64(a.raw, b.raw, c.raw, kTable)};
+}
+#else
+template <int kTable, typename V>
+HWY_INLINE V Ternary(V a, V b, V c) {
+  return TernaryByTwos<kTable>(a, b, c);
+}
+#endif
+
+// A word of 64 messages' bits, for nodes that fit one.
+struct Word {
+  std::uint64_t bits;
+};
+template <int kTable>
+HWY_INLINE Word Ternary(Word a, Word b, Word c) {
+  const std::uint64_t x = a.bits;
+  const std::uint64_t y = b.bits;
+  const std::uint64_t z = c.bits;
+  switch (kTable) {
+    case kXor3:
+      return {x ^ y ^ z};
+    case kMajority:
+      return {(x & y) | ((x ^ y) & z)};
+    case kSelect:
+      return {(x & y) | (~x & z)};
+    case kMajorityNotSecond:
+      return {(~y & (x | z)) | (x & z)};
+    case kAndNotThird:
+      return {x & y & ~z};
+    case kOrAndNot:
+      return {x | (y & ~z)};
+    default:  // kAndXor
+      return {x & (y ^ z)};
+  }
+}
+HWY_INLINE Word And(Word a, Word b) { return {a.bits & b.bits}; }
+HWY_INLINE Word Xor(Word a, Word b) { return {a.bits ^ b.bits}; }
+HWY_INLINE Word AndNot(Word not_a, Word b) { return {~not_a.bits & b.bits}; }
+template <typename V>
+HWY_INLINE V And(V a, V b) {
+  return hn::And(a, b);
+}
+template <typename V>
+HWY_INLINE V Xor(V a, V b) {
+  return hn::Xor(a, b);
+}
+template <typename V>
+HWY_INLINE V AndNot(V not_a, V b) {
+  return hn::AndNot(not_a, b);
+}
+
+enum class Shape { constant, one, two, three };
+
+// What a shape stores: magnitude planes, and whether there is a sign.
+constexpr int MagnitudePlanes(Shape shape) { return static_cast<int>(shape); }
+constexpr bool HasSign(Shape shape) { return shape == Shape::two || shape == Shape::three; }
+// The shape that g makes of it when W magnitude bits are kept.
+template <int kW>
+constexpr Shape AfterG(Shape shape) {
+  return shape == Shape::constant ? Shape::one
+         : shape == Shape::one    ? Shape::two
+         : kW == 2                ? Shape::two
+                                  : Shape::three;
+}
+
+// Messages of a node, or of half of it: sign and magnitude planes; those that the shape lacks are
+// not used.
+template <typename V>
+struct Message {
+  V s;
+  V m[3];
+};
+
+// magnitude of a > magnitude of b.
+template <Shape kShape, typename V>
+HWY_INLINE V Greater(const Message<V>& a, const Message<V>& b) {
+  V greater = AndNot(b.m[0], a.m[0]);
+  for (int i = 1; i < MagnitudePlanes(kShape); ++i) {
+    greater = Ternary<kMajorityNotSecond>(a.m[i], b.m[i], greater);
+  }
+  return greater;
+}
+
+// f: the signs' sum, the smaller magnitude.
+template <Shape kShape, typename V>
+HWY_INLINE Message<V> F(const Message<V>& a, const Message<V>& b) {
+  Message<V> out;
+  if constexpr (kShape == Shape::one) {
+    out.m[0] = And(a.m[0], b.m[0]);
+  } else {
+    out.s = Xor(a.s, b.s);
+    const V greater = Greater<kShape>(a, b);
+    for (int i = 0; i < MagnitudePlanes(kShape); ++i) {
+      out.m[i] = Ternary<kSelect>(greater, b.m[i], a.m[i]);
+    }
+  }
+  return out;
+}
+
+// The sign of f alone. REQUIRES: a shape with a sign.
+template <typename V>
+HWY_INLINE V SignOfF(const Message<V>& a, const Message<V>& b) {
+  return Xor(a.s, b.s);
+}
+
+// The sign of g alone: b's, but a's where the two disagree and a is larger.
+template <Shape kShape, typename V>
+HWY_INLINE V SignOfG(const Message<V>& a, const Message<V>& b, V bit) {
+  if constexpr (kShape == Shape::one) {
+    return Ternary<kAndNotThird>(bit, a.m[0], b.m[0]);
+  } else {
+    const V differ = Ternary<kXor3>(a.s, b.s, bit);
+    return Xor(b.s, And(differ, Greater<kShape>(a, b)));
+  }
+}
+
+// g: with t = sign_a xor sign_b xor bit the magnitudes are added (t = 0) or subtracted (t = 1).
+// Sum and difference are a xor b xor carry alike; the carry of the sum and the borrow of larger
+// minus smaller are the majority of the carry before and a and b, the larger one inverted in a
+// difference.
+template <Shape kShape, int kW, typename V>
+HWY_INLINE Message<V> G(const Message<V>& a, const Message<V>& b, V bit) {
+  Message<V> out;
+  if constexpr (kShape == Shape::one) {
+    out.s = Ternary<kAndNotThird>(bit, a.m[0], b.m[0]);
+    out.m[0] = Xor(a.m[0], b.m[0]);
+    out.m[1] = Ternary<kAndNotThird>(a.m[0], b.m[0], bit);
+  } else {
+    const V t = Ternary<kXor3>(a.s, b.s, bit);
+    const V a_inverted = And(t, Greater<kShape>(a, b));
+    const V b_inverted = Xor(t, a_inverted);
+    out.s = Xor(b.s, a_inverted);
+    out.m[0] = Xor(a.m[0], b.m[0]);
+    V carry = Ternary<kAndXor>(Xor(a.m[0], a_inverted), b.m[0], b_inverted);
+    constexpr int kIn = MagnitudePlanes(kShape);
+    for (int i = 1; i < kIn; ++i) {
+      out.m[i] = Ternary<kXor3>(a.m[i], b.m[i], carry);
+      carry = Ternary<kMajority>(Xor(a.m[i], a_inverted), Xor(b.m[i], b_inverted), carry);
+    }
+    if constexpr (kIn < kW) {
+      out.m[kIn] = carry;  // a difference ends without a borrow
+    } else {
+      for (int i = 0; i < kIn; ++i) out.m[i] = Ternary<kOrAndNot>(out.m[i], carry, t);
+    }
+  }
+  return out;
+}
+
+}  // namespace HWY_NAMESPACE
+}  // namespace frostline
+HWY_AFTER_NAMESPACE();
+
+#endif  // FROSTLINE_PLANE_RULES_INL_H

@@ -1,0 +1,94 @@
+// The lane decoder beside the plain scalar reference and memcpy: Gbit/s of key a core.
+#include <benchmark/benchmark.h>
+
+#include <cstring>
+
+#include "construct/designer.h"
+#include "decode/exchange/cut.h"
+#include "decode/lanes/lane_decoder.h"
+#include "decode/reference/successive_cancellation.h"
+#include "polar/random.h"
+#include "polar/syndrome.h"
+
+namespace frostline {
+namespace {
+
+struct Setup {
+  Code code;
+  KeyWords difference;
+};
+
+// A design for FER bound 0.1 and the difference rows of a batch at its QBER, as N and p in 1e-3.
+Setup make_setup(unsigned log2, double p, unsigned lanes) {
+  const Arithmetic arithmetic = Arithmetic::planes_of(3);
+  const BlockLength block_length = BlockLength::from_log2(log2);
+  const Ranking ranking =
+      rank_indices(block_length, p, default_construction(arithmetic), 0, arithmetic);
+  Setup setup{make_design(ranking, {Goal::Kind::fer, 0.1, 0}, {}, {}).design.code, {}};
+  const SyndromeFormer former(setup.code.frozen, Precoding::none);
+  setup.difference.resize(words_for(block_length.bits() * lanes));
+  RandomStream(1, "lanes bench", log2).bernoulli(p, block_length.bits() * lanes, setup.difference);
+  former.to_public_rows(setup.difference, lanes);
+  former.scatter(former.gather(setup.difference, lanes), lanes, setup.difference);
+  return setup;
+}
+
+void report(benchmark::State& state, std::size_t bits) {
+  state.counters["Gbit/s"] = benchmark::Counter(static_cast<double>(bits) * 1e-9,
+                                                benchmark::Counter::kIsIterationInvariantRate);
+}
+
+// range(0): n, range(1): p in 1e-3, range(2): lanes, 0 for the default.
+void LaneDecoding(benchmark::State& state) {
+  const auto log2 = static_cast<unsigned>(state.range(0));
+  const double p = static_cast<double>(state.range(1)) * 1e-3;
+  const unsigned lanes = state.range(2) > 0 ? static_cast<unsigned>(state.range(2))
+                                            : default_lanes(BlockLength::from_log2(log2));
+  const Setup setup = make_setup(log2, p, lanes);
+  const LaneDecoder decoder(setup.code, Arithmetic::planes_of(3));
+  KeyWords errors(setup.difference.size());
+  for (auto _ : state) {
+    decoder.decode(setup.difference, lanes, errors);
+    benchmark::ClobberMemory();
+  }
+  report(state, setup.difference.size() * 64);
+}
+void grid(benchmark::internal::Benchmark* benchmark) {
+  for (const int n : {10, 12, 14, 16, 18, 20, 22, 24}) {
+    for (const int p : {10, 20, 50, 110}) benchmark->Args({n, p, 0});
+  }
+}
+BENCHMARK(LaneDecoding)->Apply(grid);
+BENCHMARK(LaneDecoding)->Args({20, 20, 1})->Args({16, 20, 1})->Args({16, 20, 512});
+
+// The message of the same batch: what the receiver does besides decoding.
+void SyndromeOfDesign(benchmark::State& state) {
+  const auto log2 = static_cast<unsigned>(state.range(0));
+  const unsigned lanes = default_lanes(BlockLength::from_log2(log2));
+  const Setup setup = make_setup(log2, 0.02, lanes);
+  const SyndromeFormer former(setup.code.frozen, Precoding::none);
+  KeyWords rows = setup.difference;
+  for (auto _ : state) {
+    former.to_public_rows(rows, lanes);
+    benchmark::DoNotOptimize(former.gather(rows, lanes));
+  }
+  report(state, setup.difference.size() * 64);
+}
+BENCHMARK(SyndromeOfDesign)->Arg(12)->Arg(16)->Arg(20)->Arg(22);
+
+// Plain scalar SC on one block, exact (double LLRs) and planes:3.
+void ScalarDecoding(benchmark::State& state, const Arithmetic& arithmetic) {
+  const auto log2 = static_cast<unsigned>(state.range(0));
+  const Setup setup = make_setup(log2, 0.02, 1);
+  BitString difference(std::size_t{1} << log2);
+  std::copy(setup.difference.begin(), setup.difference.end(), difference.words().begin());
+  for (auto _ : state) {
+    benchmark::DoNotOptimize(decode_sc(setup.code, arithmetic, 0.02, difference));
+  }
+  report(state, difference.size());
+}
+BENCHMARK_CAPTURE(ScalarDecoding, exact, Arithmetic::exact())->Arg(12)->Arg(16)->Arg(20);
+BENCHMARK_CAPTURE(ScalarDecoding, planes_3, Arithmetic::planes_of(3))->Arg(12)->Arg(16)->Arg(20);
+
+}  // namespace
+}  // namespace frostline
