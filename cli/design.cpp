@@ -103,25 +103,25 @@ Designed design_as_asked(const Options& options) {
   return make_design(ranking, goal_of(options, goal, qber), code, asked(options));
 }
 
-void print_account(const Designed& designed, const std::string& path) {
+void print_account(std::ostream& out, const Designed& designed, const std::string& path) {
   const Design& design = designed.design;
-  std::cout << "Design written to " << path << ".\n";
+  out << "Design written to " << path << ".\n";
   if (design.predicted.fer && *design.predicted.fer >= 1) {
-    std::cout << "The predicted FER is 1: nearly every block would fail.\n";
+    out << "The predicted FER is 1: nearly every block would fail.\n";
   }
   if (design.predicted.kind == "estimate" || design.predicted.kind == "upper-bound") {
     if (design.arithmetic.kind != Arithmetic::Kind::exact) {
-      std::cout << "The prediction is for exact arithmetic; " << to_string(design.arithmetic)
-                << " fails somewhat more often.\n";
+      out << "The prediction is for exact arithmetic; " << to_string(design.arithmetic)
+          << " fails somewhat more often.\n";
     }
   }
   if (designed.net_key_rate) {
-    std::cout << (*designed.net_key_rate > 0
-                      ? "Net key, failed blocks discarded: " + fixed(*designed.net_key_rate, 4) +
-                            " bits a sifted bit.\n"
-                      : std::string("No key at this error rate.\n"));
+    out << (*designed.net_key_rate > 0
+                ? "Net key, failed blocks discarded: " + fixed(*designed.net_key_rate, 4) +
+                      " bits a sifted bit.\n"
+                : std::string("No key at this error rate.\n"));
   }
-  std::cout << describe(design);
+  out << describe(design);
 }
 
 }  // namespace
@@ -143,7 +143,7 @@ int run_design(const std::vector<std::string>& arguments) {
     if (designed.net_key_rate) summary["net_key_rate"] = *designed.net_key_rate;
     std::cout << summary.dump(2) << '\n';
   } else if (!options.quiet()) {
-    print_account(designed, path);
+    print_account(options.account(), designed, path);
   }
   return designed.net_key_rate && *designed.net_key_rate <= 0 ? kNotAsAsked : kDone;
 }

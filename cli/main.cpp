@@ -41,6 +41,12 @@ void print_overview(std::ostream& out) {
          "rules come first.\n";
 }
 
+// Names of files may hold anything.
+std::string one_line(std::string text) {
+  std::replace(text.begin(), text.end(), '\n', ' ');
+  return text;
+}
+
 int run(const std::vector<std::string>& arguments) {
   if (arguments.empty()) {
     print_overview(std::cerr);
@@ -84,7 +90,7 @@ int main(int argc, char** argv) {
     std::cerr << "frostline: interrupted\n";
     return cli::kInterrupted;
   } catch (const InputError& error) {
-    std::cerr << "frostline: " << error.what() << '\n';
+    std::cerr << "frostline: " << cli::one_line(error.what()) << '\n';
   } catch (const std::bad_alloc&) {
     std::cerr << "frostline: not enough memory for this block length and number of threads\n";
   } catch (const std::exception& error) {

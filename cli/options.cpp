@@ -246,6 +246,17 @@ std::optional<std::uint64_t> Options::optional_whole(const std::string& name) co
   return whole(name);
 }
 
+std::ostream& Options::account() const {
+  for (const auto& [name, words] : given_) {
+    for (const std::string& word : words) {
+      if (word == "/dev/stdout" || word == "/dev/fd/1" || word == "/proc/self/fd/1") {
+        return std::cerr;
+      }
+    }
+  }
+  return std::cout;
+}
+
 void require_distinct_files(const std::vector<std::string>& inputs,
                             const std::vector<std::string>& outputs) {
   // One regular file, there or to be, however it is spelled.

@@ -2,6 +2,7 @@
 #pragma once
 
 #include <cstdint>
+#include <iosfwd>
 #include <optional>
 #include <string>
 #include <vector>
@@ -39,6 +40,10 @@ class Options {
   std::uint64_t whole(const std::string& name) const;
   std::optional<double> optional_number(const std::string& name) const;
   std::optional<std::uint64_t> optional_whole(const std::string& name) const;
+
+  // Where the account for a person goes: stdout, or stderr where an output of the command takes
+  // stdout.
+  std::ostream& account() const;
 
   bool json() const { return has("json"); }
   bool quiet() const { return has("quiet"); }

@@ -86,6 +86,12 @@ std::vector<std::string> output_paths(const Options& options) {
   return paths;
 }
 
+// The best that is known: of all blocks, else of the accepted ones, else what the design is for.
+double observed_qber(const Design& design, const ReconcileSummary& summary) {
+  if (summary.all_blocks_qber) return summary.all_blocks_qber->qber;
+  return summary.accepted > 0 ? summary.accepted_qber : design.qber;
+}
+
 std::optional<double> phase_error(const Options& options) {
   const std::optional<double> value = options.optional_number("phase-error");
   if (value && !(*value >= 0 && *value <= 0.5)) {
@@ -94,13 +100,13 @@ std::optional<double> phase_error(const Options& options) {
   return value;
 }
 
-void print_account(const Design& design, const ReconcileSummary& summary, const RunFigures& figures,
-                   double seconds) {
+void print_account(std::ostream& out, const Design& design, const ReconcileSummary& summary,
+                   const RunFigures& figures, double seconds) {
   const std::uint64_t bits = summary.blocks * figures.block_length;
-  std::cout << grouped(summary.accepted) << " of " << counted(summary.blocks, "block")
-            << " accepted; provisional until the verdict comes.\n";
-  if (summary.receipt.test_only) std::cout << kTestOnlySentence;
-  std::cout << failure_diagnosis(design, summary);
+  out << grouped(summary.accepted) << " of " << counted(summary.blocks, "block")
+      << " accepted; provisional until the verdict comes.\n";
+  if (summary.receipt.test_only) out << kTestOnlySentence;
+  out << failure_diagnosis(design, summary);
   Table table;
   table
       .row("blocks", grouped(summary.blocks) + " of " + grouped(figures.block_length) +
@@ -122,7 +128,7 @@ void print_account(const Design& design, const ReconcileSummary& summary, const 
   add_figures(table, figures, summary.ledger, summary.epsilon_correctness);
   table.row("time", fixed(seconds, 2) + " s, " +
                         fixed(static_cast<double>(bits) / seconds / 1e6, 1) + " Mbit/s of key");
-  std::cout << table.text();
+  out << table.text();
 }
 
 }  // namespace
@@ -152,9 +158,8 @@ int run_reconcile(const std::vector<std::string>& arguments) {
   const ReconcileSummary summary =
       reconcile(design, *decoder, *key, message, reconcile_options, keys.sinks(), state.control());
   const double seconds = state.seconds();
-  const RunFigures figures =
-      run_figures(design, summary.blocks, summary.accepted, summary.ledger,
-                  summary.accepted > 0 ? summary.accepted_qber : design.qber, phase);
+  const RunFigures figures = run_figures(design, summary.blocks, summary.accepted, summary.ledger,
+                                         observed_qber(design, summary), phase);
   Json report_json = receiver_report(design, summary, figures);
   if (report) report->write(report_json.dump(1) + "\n");
   receipt.write(receipt_to_json(summary.receipt));
@@ -171,9 +176,10 @@ int run_reconcile(const std::vector<std::string>& arguments) {
     report_json["seconds"] = seconds;
     std::cout << report_json.dump(2) << '\n';
   } else if (!options.quiet()) {
-    print_account(design, summary, figures, seconds);
+    print_account(options.account(), design, summary, figures, seconds);
   }
-  const bool as_asked = summary.accepted > 0 && !(options.has("strict") && summary.failed() > 0);
+  const bool as_asked = summary.accepted > 0 && figures.net_key.plain > 0 &&
+                        !(options.has("strict") && summary.failed() > 0);
   return as_asked ? kDone : kNotAsAsked;
 }
 

@@ -36,7 +36,6 @@ Json figures_json(const RunFigures& figures) {
       figures.limit_efficiency ? Json(*figures.limit_efficiency) : Json(nullptr);
   object["phase_error"] = figures.phase_error;
   object["net_key"] = net_key_json(figures.net_key);
-  object["extractable_bits"] = figures.extractable_bits;
   return object;
 }
 
@@ -91,9 +90,6 @@ RunFigures run_figures(const Design& design, std::uint64_t blocks, std::uint64_t
       kept_bits > 0 ? static_cast<double>(ledger.accepted.total()) / static_cast<double>(kept_bits)
                     : 1.0;
   figures.net_key = net_key(figures.fer, figures.leakage_per_bit, figures.phase_error);
-  const double left = static_cast<double>(kept_bits) *
-                      (1 - binary_entropy(figures.phase_error) - figures.leakage_per_bit);
-  figures.extractable_bits = left > 0 ? static_cast<std::uint64_t>(left) : 0;
   return figures;
 }
 
@@ -151,6 +147,25 @@ Json receiver_report(const Design& design, const ReconcileSummary& summary,
   root["epsilon_correctness"] = summary.epsilon_correctness;
   root["figures"] = figures_json(figures);
   root["errors_corrected"] = errors_json(summary);
+  return root;
+}
+
+Json confirm_report(const ConfirmSummary& summary) {
+  Json root;
+  root["format"] = "frostline-report";
+  root["version"] = 1;
+  root["end"] = "receiver";
+  root["state"] = "settled";
+  root["test_only"] = summary.test_only;
+  root["session"] = to_hex(summary.session);
+  root["block_length"] = summary.block_length;
+  root["blocks"] = summary.blocks;
+  root["settled_blocks"] = summary.settled_blocks;
+  root["settled_bits"] = summary.settled_bits;
+  root["groups"] = summary.groups;
+  root["rejected_groups"] = summary.rejected_groups;
+  root["ledger"] = ledger_json(summary.ledger, summary.ledger.accepted.total());
+  root["epsilon_correctness"] = summary.epsilon_correctness;
   return root;
 }
 

@@ -23,8 +23,7 @@ struct RunFigures {
   std::optional<double> limit_efficiency;  // finite-length limit at that QBER and the measured FER
   double leakage_per_bit;                  // accepted leakage over kept key bits
   double phase_error;
-  NetKey net_key;                  // a sifted bit
-  std::uint64_t extractable_bits;  // key bits left when accepted leakage and phase are paid
+  NetKey net_key;  // a sifted bit
 };
 
 // qber: observed or of the design; phase_error: where the user gave none, the same.
@@ -37,6 +36,7 @@ void add_figures(Table& table, const RunFigures& figures, const Ledger& ledger,
 
 Json receiver_report(const Design& design, const ReconcileSummary& summary,
                      const RunFigures& figures);
+Json confirm_report(const ConfirmSummary& summary);
 Json sender_report(const Design& design, const SettleSummary& summary, const RunFigures& figures);
 
 // What it looks like when nearly all blocks fail; empty when they do not.

@@ -86,9 +86,10 @@ int run_sample(const std::vector<std::string>& arguments) {
     root["files"] = paths;
     std::cout << root.dump(2) << '\n';
   } else if (!options.quiet()) {
-    std::cout << "Two strings of " << counted(bits, "bit") << " in " << paths[0] << " and "
-              << paths[1] << " differ in " << counted(differences, "position") << " ("
-              << percent(static_cast<double>(differences) / static_cast<double>(bits), 3) << ").\n";
+    options.account() << "Two strings of " << counted(bits, "bit") << " in " << paths[0] << " and "
+                      << paths[1] << " differ in " << counted(differences, "position") << " ("
+                      << percent(static_cast<double>(differences) / static_cast<double>(bits), 3)
+                      << ").\n";
   }
   return kDone;
 }

@@ -33,14 +33,18 @@ Options make_options() {
   return options;
 }
 
-void print_account(const SettleSummary& summary, const RunFigures& figures, double seconds) {
-  std::cout << grouped(summary.settled_blocks) << " of " << counted(summary.blocks, "block")
-            << " settled, " << counted(summary.settled_bits, "bit") << ".\n";
-  if (summary.verdict.test_only) std::cout << kTestOnlySentence;
+void print_account(std::ostream& out, const SettleSummary& summary, const RunFigures& figures,
+                   double seconds) {
+  out << grouped(summary.settled_blocks) << " of " << counted(summary.blocks, "block")
+      << " settled, " << counted(summary.settled_bits, "bit") << ".\n";
+  if (summary.verdict.test_only) out << kTestOnlySentence;
   if (summary.rejected_groups > 0) {
-    std::cout << counted(summary.rejected_groups, "group") << " of "
-              << grouped(summary.verdict.group_kept.size())
-              << " rejected whole: the tags differ, so the two ends are not equal there.\n";
+    out << counted(summary.rejected_groups, "group") << " of "
+        << grouped(summary.verdict.group_kept.size())
+        << " rejected whole: the tags differ, so the two ends are not equal there.\n";
+    if (summary.settled_blocks == 0) {
+      out << "No group agrees: is this the key that the message was made of?\n";
+    }
   }
   Table table;
   table.row("accepted by receiver", counted(summary.accepted_by_receiver, "block"))
@@ -48,7 +52,7 @@ void print_account(const SettleSummary& summary, const RunFigures& figures, doub
                          grouped(summary.rejected_groups) + " rejected");
   add_figures(table, figures, summary.ledger, summary.epsilon_correctness);
   table.row("time", fixed(seconds, 2) + " s");
-  std::cout << table.text();
+  out << table.text();
 }
 
 }  // namespace
@@ -96,9 +100,11 @@ int run_settle(const std::vector<std::string>& arguments) {
     report_json["seconds"] = seconds;
     std::cout << report_json.dump(2) << '\n';
   } else if (!options.quiet()) {
-    print_account(summary, figures, seconds);
+    print_account(options.account(), summary, figures, seconds);
   }
-  return summary.settled_blocks > 0 && summary.rejected_groups == 0 ? kDone : kNotAsAsked;
+  const bool as_asked =
+      summary.settled_blocks > 0 && summary.rejected_groups == 0 && figures.net_key.plain > 0;
+  return as_asked ? kDone : kNotAsAsked;
 }
 
 }  // namespace frostline::cli

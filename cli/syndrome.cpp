@@ -37,10 +37,11 @@ FileSink open_message(const std::string& path) {
   }
 }
 
-void print_account(const MessageSummary& summary, const std::string& path, double seconds) {
+void print_account(std::ostream& out, const MessageSummary& summary, const std::string& path,
+                   double seconds) {
   const std::uint64_t bits = summary.blocks * summary.header.block_length;
-  std::cout << "Message of " << counted(summary.blocks, "block") << " written to " << path << ".\n";
-  if (summary.header.test_only) std::cout << kTestOnlySentence;
+  out << "Message of " << counted(summary.blocks, "block") << " written to " << path << ".\n";
+  if (summary.header.test_only) out << kTestOnlySentence;
   Table table;
   table
       .row("key",
@@ -51,7 +52,7 @@ void print_account(const MessageSummary& summary, const std::string& path, doubl
       .row("message", counted(summary.message_bytes, "byte"))
       .row("time", fixed(seconds, 2) + " s, " +
                        fixed(static_cast<double>(bits) / seconds / 1e6, 1) + " Mbit/s of key");
-  std::cout << table.text();
+  out << table.text();
 }
 
 }  // namespace
@@ -92,7 +93,7 @@ int run_syndrome(const std::vector<std::string>& arguments) {
     root["seconds"] = state.seconds();
     std::cout << root.dump(2) << '\n';
   } else if (!options.quiet()) {
-    print_account(summary, path, state.seconds());
+    print_account(options.account(), summary, path, state.seconds());
   }
   return kDone;
 }

@@ -5,12 +5,12 @@
 
 namespace frostline {
 
-Ledger book_leakage(const Code& code, std::uint64_t blocks, std::uint64_t accepted,
-                    std::uint64_t tags, std::uint64_t kept_tags) {
+Ledger book_leakage(std::uint64_t frozen_count, unsigned check_bits, std::uint64_t blocks,
+                    std::uint64_t accepted, std::uint64_t tags, std::uint64_t kept_tags) {
   const auto book = [&](std::uint64_t block_count, std::uint64_t tag_count) {
     LeakedBits bits;
-    bits.syndrome = block_count * code.frozen.frozen_count();
-    bits.check = block_count * code.check_bits;
+    bits.syndrome = block_count * frozen_count;
+    bits.check = block_count * check_bits;
     bits.tag = tag_count * kTagBits;
     bits.accept = block_count;
     return bits;

@@ -26,8 +26,13 @@ struct Ledger {
 
 // blocks: of the whole message; accepted: that stay in the key; tags: groups that were tagged;
 // kept_tags: groups that stay. The tag of a rejected group tells nothing of what stays.
-Ledger book_leakage(const Code& code, std::uint64_t blocks, std::uint64_t accepted,
-                    std::uint64_t tags, std::uint64_t kept_tags);
+Ledger book_leakage(std::uint64_t frozen_count, unsigned check_bits, std::uint64_t blocks,
+                    std::uint64_t accepted, std::uint64_t tags, std::uint64_t kept_tags);
+inline Ledger book_leakage(const Code& code, std::uint64_t blocks, std::uint64_t accepted,
+                           std::uint64_t tags, std::uint64_t kept_tags) {
+  return book_leakage(code.frozen.frozen_count(), code.check_bits, blocks, accepted, tags,
+                      kept_tags);
+}
 
 // Efficiency f: (syndrome + check + tag + revealed bits) / (bits h2(p)), accept bits apart.
 // 0 where bits or p is 0.

@@ -1,5 +1,6 @@
 #include "decode/exchange/receipt.h"
 
+#include "polar/check_bits.h"
 #include "polar/design_json.h"
 #include "polar/error.h"
 
@@ -107,6 +108,8 @@ std::string receipt_to_json(const Receipt& receipt) {
   root["message_sha256"] = to_hex(receipt.message);
   root["code_sha256"] = to_hex(receipt.code);
   root["block_length"] = receipt.block_length;
+  root["frozen_count"] = receipt.frozen_count;
+  root["check_bits"] = receipt.check_bits;
   root["blocks"] = receipt.accepted.size();
   root["accepted"] = receipt.accepted.count();
   root["accept_hex"] = receipt.accepted.empty() ? "" : bits_to_hex(receipt.accepted);
@@ -118,10 +121,11 @@ std::string receipt_to_json(const Receipt& receipt) {
 Receipt receipt_from_json(std::string_view text, std::string_view name_view) {
   const std::string name(name_view);
   const Json root = parse_message(text, name, "frostline-receipt");
-  require_keys(root,
-               {"format", "version", "test_only", "session", "message_sha256", "code_sha256",
-                "block_length", "blocks", "accepted", "accept_hex", "groups"},
-               {}, name);
+  require_keys(
+      root,
+      {"format", "version", "test_only", "session", "message_sha256", "code_sha256", "block_length",
+       "frozen_count", "check_bits", "blocks", "accepted", "accept_hex", "groups"},
+      {}, name);
   Receipt receipt;
   receipt.test_only = get_bool(root, "test_only", name);
   receipt.session = get_bytes<SessionNumber>(root, "session", name);
@@ -129,6 +133,13 @@ Receipt receipt_from_json(std::string_view text, std::string_view name_view) {
   receipt.code = get_bytes<Sha256>(root, "code_sha256", name);
   const std::uint64_t length = get_unsigned(root, "block_length", name);
   receipt.block_length = static_cast<std::uint32_t>(BlockLength(length).bits());
+  receipt.frozen_count = get_unsigned(root, "frozen_count", name);
+  const std::uint64_t width = get_unsigned(root, "check_bits", name);
+  if (receipt.frozen_count > length || width > 32 ||
+      !is_check_width(static_cast<unsigned>(width))) {
+    throw InputError(name + ": frozen_count or check_bits that no design has");
+  }
+  receipt.check_bits = static_cast<std::uint32_t>(width);
   const std::string hex = get_string(root, "accept_hex", name);
   const std::uint64_t blocks = get_unsigned(root, "blocks", name);
   if (blocks / 4 > hex.size()) throw InputError(name + ": too few accept bits");

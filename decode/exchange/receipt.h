@@ -33,8 +33,10 @@ struct Receipt {
   Sha256 message{};
   Sha256 code{};
   std::uint32_t block_length = 0;
-  BitString accepted;         // one bit a block
-  std::vector<Group> groups;  // ascending; only groups with an accepted block
+  std::uint64_t frozen_count = 0;  // M and c of the design, so that the ledger can be closed
+  std::uint32_t check_bits = 0;    // without it
+  BitString accepted;              // one bit a block
+  std::vector<Group> groups;       // ascending; only groups with an accepted block
 };
 
 std::string receipt_to_json(const Receipt& receipt);

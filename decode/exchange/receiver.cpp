@@ -256,6 +256,8 @@ ReconcileSummary reconcile(const Design& design, const BatchDecoder& decoder, co
   receipt.test_only = summary.header.test_only || options.test_seed.has_value();
   receipt.code = code_sha256(code);
   receipt.block_length = static_cast<std::uint32_t>(code.block_length().bits());
+  receipt.frozen_count = code.frozen.frozen_count();
+  receipt.check_bits = code.check_bits;
   receipt.groups = tagger.finish();
   if (sinks.provisional != nullptr) sinks.provisional->finish();
   if (sinks.failed != nullptr) sinks.failed->finish();
@@ -307,8 +309,18 @@ ConfirmSummary confirm(const KeySource& provisional, std::string_view receipt_te
     if (control.progress) control.progress(next, accepted);
   }
   settled.finish();
+  summary.session = receipt.session;
+  summary.block_length = receipt.block_length;
+  summary.blocks = receipt.accepted.size();
   summary.settled_bits = settled.bits();
   summary.settled_blocks = settled.bits() / bits;
+  summary.ledger =
+      book_leakage(receipt.frozen_count, receipt.check_bits, summary.blocks, summary.settled_blocks,
+                   summary.groups, summary.groups - summary.rejected_groups);
+  for (std::size_t g = 0; g < receipt.groups.size(); ++g) {
+    if (!verdict.group_kept[g]) continue;
+    summary.epsilon_correctness += tag_collision_bound(receipt.groups[g].accepted * bits / 8);
+  }
   return summary;
 }
 

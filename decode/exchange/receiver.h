@@ -71,10 +71,15 @@ ReconcileSummary reconcile(const Design& design, const BatchDecoder& decoder, co
                            const ReconcileSinks& sinks, const RunControl& control = {});
 
 struct ConfirmSummary {
+  SessionNumber session{};
+  std::uint64_t block_length = 0;
+  std::uint64_t blocks = 0;
   std::uint64_t settled_bits = 0;
   std::uint64_t settled_blocks = 0;
   std::uint64_t rejected_groups = 0;
   std::uint64_t groups = 0;
+  Ledger ledger;
+  double epsilon_correctness = 0;
   bool test_only = false;
 };
 

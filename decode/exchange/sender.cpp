@@ -88,7 +88,8 @@ void require_belongs(const Receipt& receipt, const MessageReader& reader, const 
   if (receipt.message != message || receipt.session != reader.header().session) {
     throw InputError("receipt '" + name + "' answers another message");
   }
-  if (receipt.code != code_sha256(code) || receipt.block_length != code.block_length().bits()) {
+  if (receipt.code != code_sha256(code) || receipt.block_length != code.block_length().bits() ||
+      receipt.frozen_count != code.frozen.frozen_count() || receipt.check_bits != code.check_bits) {
     throw InputError("receipt '" + name + "' was made with another design");
   }
   if (receipt.accepted.size() != reader.cut().block_count()) {

@@ -18,6 +18,7 @@
 namespace frostline {
 namespace {
 
+constexpr std::size_t kMaxTextBytes = std::size_t{1} << 30;
 constexpr std::size_t kBufferBytes = std::size_t{1} << 20;
 
 std::string reason(int error) { return std::strerror(error); }
@@ -105,6 +106,9 @@ std::string read_file(const std::string& path) {
   std::vector<std::uint8_t> buffer(kBufferBytes);
   while (const std::size_t got = source.read(Span<std::uint8_t>(buffer))) {
     contents.append(reinterpret_cast<const char*>(buffer.data()), got);
+    if (contents.size() > kMaxTextBytes) {
+      throw InputError("'" + path + "' is longer than 1 GiB: not one of this program's files");
+    }
   }
   return contents;
 }

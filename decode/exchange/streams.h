@@ -73,7 +73,7 @@ class FileSource : public ByteSource {
   std::optional<std::uint64_t> size_;
 };
 
-// The whole contents of a file that holds no key.
+// The whole contents of a file that holds no key. Throws InputError when it is longer than 1 GiB.
 std::string read_file(const std::string& path);
 
 enum class FileAccess { normal, secret };  // secret: mode 0600

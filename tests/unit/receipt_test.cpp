@@ -75,9 +75,10 @@ TEST(Receipt, HoldsTheKeysOfTheFormatInItsOrder) {
   const Json root = Json::parse(receipt_to_json(example()));
   std::vector<std::string> keys;
   for (const auto& [key, value] : root.items()) keys.push_back(key);
-  EXPECT_EQ(keys, (std::vector<std::string>{"format", "version", "test_only", "session",
-                                            "message_sha256", "code_sha256", "block_length",
-                                            "blocks", "accepted", "accept_hex", "groups"}));
+  EXPECT_EQ(keys,
+            (std::vector<std::string>{"format", "version", "test_only", "session", "message_sha256",
+                                      "code_sha256", "block_length", "frozen_count", "check_bits",
+                                      "blocks", "accepted", "accept_hex", "groups"}));
   EXPECT_EQ(root.at("session"), "0102030405060708090a0b0c0d0e0f10");
   // Blocks 0, 2, 3 and 8, 9: 1011 0000 11(00).
   EXPECT_EQ(root.at("accept_hex"), "b0c");
