@@ -1,5 +1,6 @@
 #include "construct/selection.h"
 
+#include <tbb/parallel_for.h>
 #include <tbb/parallel_sort.h>
 
 #include <algorithm>
@@ -28,10 +29,18 @@ std::vector<std::uint32_t> freezing_order(const Reliability& reliability) {
     if (!(log_p[i] <= 0)) throw std::invalid_argument("freezing_order: ln P is not at most 0");
     ranked[i] = {std::nearbyint(log_p[i] * 1e9), static_cast<std::uint32_t>(i)};
   }
-  // The order is total, so the number of threads cannot show in it.
-  tbb::parallel_sort(ranked.begin(), ranked.end(), [](const RankedIndex& a, const RankedIndex& b) {
-    return a.rounded != b.rounded ? a.rounded > b.rounded : a.index < b.index;
-  });
+  // The order is total, so the number of threads cannot show in it. Isolated: in a cancelled run
+  // around this one the sort would return with nothing sorted.
+  tbb::task_group_context context(tbb::task_group_context::isolated);
+  tbb::parallel_for(
+      0, 1,
+      [&](int) {
+        tbb::parallel_sort(
+            ranked.begin(), ranked.end(), [](const RankedIndex& a, const RankedIndex& b) {
+              return a.rounded != b.rounded ? a.rounded > b.rounded : a.index < b.index;
+            });
+      },
+      context);
   std::vector<std::uint32_t> order(ranked.size());
   std::transform(ranked.begin(), ranked.end(), order.begin(),
                  [](const RankedIndex& entry) { return entry.index; });

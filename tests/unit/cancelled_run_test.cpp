@@ -8,6 +8,7 @@
 #include <string>
 
 #include "construct/catalogue.h"
+#include "construct/selection.h"
 
 namespace frostline {
 namespace {
@@ -30,6 +31,24 @@ TEST_P(CancelledRun, LeavesNoConstructionHalfDone) {
       },
       context);
   EXPECT_EQ(cancelled.log_error_probability, whole.log_error_probability);
+}
+
+TEST(CancelledOrder, LeavesNoFreezingOrderHalfSorted) {
+  Reliability reliability;
+  for (std::size_t i = 0; i < 20000; ++i) {
+    reliability.log_error_probability.push_back(-static_cast<double>(i * 7919 % 20011));
+  }
+  const std::vector<std::uint32_t> whole = freezing_order(reliability);
+  std::vector<std::uint32_t> cancelled;
+  tbb::task_group_context context;
+  tbb::parallel_for(
+      0, 1,
+      [&](int) {
+        context.cancel_group_execution();
+        cancelled = freezing_order(reliability);
+      },
+      context);
+  EXPECT_EQ(cancelled, whole);
 }
 
 INSTANTIATE_TEST_SUITE_P(Constructions, CancelledRun,
