@@ -64,6 +64,10 @@ class PlanesDensity {
     return child;
   }
 
+  // Probability of a right, or wrong, message of each magnitude.
+  const std::array<double, kLevels>& right() const { return right_; }
+  const std::array<double, kLevels>& wrong() const { return wrong_; }
+
   double error() const { return sum(wrong_); }
   double f_error() const { return 2 * sum(right_) * sum(wrong_); }
   double g_error() const {
