@@ -25,4 +25,11 @@ struct ScDecision {
 ScDecision decode_sc(const Code& code, const Arithmetic& arithmetic, double qber,
                      const BitString& difference);
 
+// Where successive cancellation would go wrong if a genie told it, at each index, all earlier ones:
+// bit i of the result is 1 when its decision at i differs from u_i, u = s G. errors: s, N bits. A
+// code with these errors fails exactly when a bit at an open index is 1, because the first wrong
+// decision is made with all earlier ones right. Throws InputError when N is no block length.
+BitString wrong_decisions_with_genie(const BitString& errors, const Arithmetic& arithmetic,
+                                     double qber);
+
 }  // namespace frostline
