@@ -1,11 +1,82 @@
+// One source for all targets of Google Highway: the file includes itself once for each.
+#undef HWY_TARGET_INCLUDE
+#define HWY_TARGET_INCLUDE "polar/lanes.cpp"  // NOLINT
+#include <hwy/foreach_target.h>               // IWYU pragma: keep
+// After foreach_target.
+#include <hwy/highway.h>
+#include <sodium.h>
+
 #include "polar/lanes.h"
 
+HWY_BEFORE_NAMESPACE();
+namespace frostline {
+namespace HWY_NAMESPACE {
+namespace hn = hwy::HWY_NAMESPACE;
+
+// Squares of 64 by 64 bits that are transposed together: word r of square q is squares[8 r + q].
+constexpr std::size_t kSquares = 8;
+
+// Swaps the upper right and lower left quarters of all blocks of 2 kWidth by 2 kWidth bits
+// (H. S. Warren, Hacker's Delight, 7-3).
+template <int kWidth>
+HWY_INLINE void SwapQuarters(std::uint64_t* HWY_RESTRICT squares, std::uint64_t mask) {
+  const hn::CappedTag<std::uint64_t, kSquares> d;
+  const auto lower = hn::Set(d, mask);
+  for (std::size_t r = 0; r < 64; r = (r + kWidth + 1) & ~std::size_t{kWidth}) {
+    std::uint64_t* const top = squares + kSquares * r;
+    std::uint64_t* const bottom = squares + kSquares * (r + kWidth);
+    for (std::size_t q = 0; q < kSquares; q += hn::Lanes(d)) {
+      const auto a = hn::Load(d, top + q);
+      const auto b = hn::Load(d, bottom + q);
+      const auto swapped = hn::And(hn::Xor(hn::ShiftRight<kWidth>(a), b), lower);
+      hn::Store(hn::Xor(b, swapped), d, bottom + q);
+      hn::Store(hn::Xor(a, hn::ShiftLeft<kWidth>(swapped)), d, top + q);
+    }
+  }
+}
+
+// A matrix of 64 tall by 64 wide bits, row after row, is written column after column.
+void TransposeInSquares(const std::uint64_t* from, std::size_t tall, std::size_t wide,
+                        std::uint64_t* to) {
+  HWY_ALIGN std::uint64_t squares[64 * kSquares];
+  for (std::size_t c = 0; c < wide; ++c) {
+    for (std::size_t r = 0; r < tall; r += kSquares) {
+      const std::size_t count = HWY_MIN(kSquares, tall - r);
+      for (std::size_t q = 0; q < count; ++q) {
+        for (std::size_t k = 0; k < 64; ++k) {
+          squares[kSquares * k + q] = from[(64 * (r + q) + k) * wide + c];
+        }
+      }
+      SwapQuarters<32>(squares, 0x00000000FFFFFFFFU);
+      SwapQuarters<16>(squares, 0x0000FFFF0000FFFFU);
+      SwapQuarters<8>(squares, 0x00FF00FF00FF00FFU);
+      SwapQuarters<4>(squares, 0x0F0F0F0F0F0F0F0FU);
+      SwapQuarters<2>(squares, 0x3333333333333333U);
+      SwapQuarters<1>(squares, 0x5555555555555555U);
+      for (std::size_t k = 0; k < 64; ++k) {
+        for (std::size_t q = 0; q < count; ++q) {
+          to[(64 * c + k) * tall + r + q] = squares[kSquares * k + q];
+        }
+      }
+    }
+  }
+  sodium_memzero(squares, sizeof squares);
+}
+
+}  // namespace HWY_NAMESPACE
+}  // namespace frostline
+HWY_AFTER_NAMESPACE();
+
+#if HWY_ONCE
 #include <algorithm>
 #include <stdexcept>
 
 #include "polar/transform.h"
 
 namespace frostline {
+
+HWY_EXPORT(TransposeInSquares);
+
 namespace {
 
 unsigned log2_of(unsigned lanes) {
@@ -78,31 +149,12 @@ void repeat_pass(Pass pass, unsigned count, Span<const std::uint64_t> from,
   }
 }
 
-// In place: bit c of word r becomes bit r of word c (H. S. Warren, Hacker's Delight, 7-3).
-void transpose_64x64(std::uint64_t words[64]) {
-  std::uint64_t mask = 0x00000000FFFFFFFFU;
-  for (unsigned width = 32; width != 0; width >>= 1, mask ^= mask << width) {
-    for (unsigned r = 0; r < 64; r = (r + width + 1) & ~width) {
-      const std::uint64_t swapped = ((words[r] >> width) ^ words[r + width]) & mask;
-      words[r + width] ^= swapped;
-      words[r] ^= swapped << width;
-    }
-  }
-}
-
 // 2^log2_rows by 2^log2_columns bits, both at least 64.
 void transpose_in_squares(Span<const std::uint64_t> from, unsigned log2_rows, unsigned log2_columns,
                           Span<std::uint64_t> to) {
-  const std::size_t row_words = (std::size_t{1} << log2_columns) / 64;
-  const std::size_t column_words = (std::size_t{1} << log2_rows) / 64;
-  std::uint64_t square[64];
-  for (std::size_t c = 0; c < row_words; ++c) {
-    for (std::size_t r = 0; r < column_words; ++r) {
-      for (std::size_t k = 0; k < 64; ++k) square[k] = from[(64 * r + k) * row_words + c];
-      transpose_64x64(square);
-      for (std::size_t k = 0; k < 64; ++k) to[(64 * c + k) * column_words + r] = square[k];
-    }
-  }
+  HWY_DYNAMIC_DISPATCH(TransposeInSquares)
+  (from.data(), (std::size_t{1} << log2_rows) / 64, (std::size_t{1} << log2_columns) / 64,
+   to.data());
 }
 
 void transpose_bit_by_bit(Span<const std::uint64_t> from, std::size_t rows, std::size_t columns,
@@ -148,3 +200,4 @@ void blocks_to_lanes(Span<const std::uint64_t> blocks, BlockLength block_length,
 }
 
 }  // namespace frostline
+#endif  // HWY_ONCE

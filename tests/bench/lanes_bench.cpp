@@ -59,7 +59,13 @@ void grid(benchmark::internal::Benchmark* benchmark) {
   }
 }
 BENCHMARK(LaneDecoding)->Apply(grid);
-BENCHMARK(LaneDecoding)->Args({20, 20, 1})->Args({16, 20, 1})->Args({16, 20, 512});
+// Other numbers of lanes, single blocks among them.
+void lanes_grid(benchmark::internal::Benchmark* benchmark) {
+  for (const auto& [n, most] : {std::pair{12, 512}, {16, 512}, {20, 128}, {22, 64}}) {
+    for (int lanes = 1; lanes <= most; lanes *= 2) benchmark->Args({n, 20, lanes});
+  }
+}
+BENCHMARK(LaneDecoding)->Apply(lanes_grid);
 
 // The message of the same batch: what the receiver does besides decoding.
 void SyndromeOfDesign(benchmark::State& state) {
