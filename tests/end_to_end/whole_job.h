@@ -51,7 +51,8 @@ struct WholeJob {
 // What a job left behind.
 struct JobOutcome {
   CommandResult design, sample, syndrome, reconcile, settle, confirm;
-  Json design_file, message_account, receipt, verdict, receiver_report, sender_report, confirm_report;
+  Json design_file, message_account, receipt, verdict, receiver_report, sender_report,
+      confirm_report;
   std::size_t block_length = 0;
   std::size_t frozen_count = 0;  // counted in the mask
   unsigned check_bits = 0;
@@ -66,8 +67,8 @@ struct JobOutcome {
 };
 
 // Files are a.key, b.key, link.design.json, a.syn, b.provisional, receipt.json, b.report,
-// a.settled, verdict.json, a.report, b.settled, b.final. Fails the test when a command does not end with
-// status 0 or 1 or writes to stderr.
+// a.settled, verdict.json, a.report, b.settled, b.final. Fails the test when a command does not end
+// with status 0 or 1 or writes to stderr.
 JobOutcome run_whole_job(const Folder& folder, const WholeJob& job);
 // The steps from design and sample to the message, for tests that go on by themselves.
 void run_to_message(const Folder& folder, const WholeJob& job);
