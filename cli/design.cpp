@@ -5,6 +5,7 @@
 #include "cli/command.h"
 #include "cli/design_file.h"
 #include "cli/design_options.h"
+#include "cli/genie_construction.h"
 #include "cli/options.h"
 #include "construct/designer.h"
 #include "decode/exchange/streams.h"
@@ -25,8 +26,10 @@ Options make_options() {
       .value("mask", "FILE", "your own frozen set instead of a construction's")
       .value("mask-format", "FORMAT", "text, hex or packed (text); 1 means frozen");
   add_code_options(options);
-  options.value("construction", "NAME", "how indices are ranked: " + construction_list())
-      .flag("reveal-order", "list the open indices in the file, most likely to fail first")
+  options.value("construction", "NAME",
+                "how indices are ranked: " + construction_list() + "; genie-trial");
+  add_genie_options(options);
+  options.flag("reveal-order", "list the open indices in the file, most likely to fail first")
       .value("output,o", "FILE", "the design file")
       .computing()
       .epilogue(
@@ -85,6 +88,7 @@ Designed design_as_asked(const Options& options) {
   const BlockLength block_length(options.whole("block-length"));
   const double qber = options.number("qber");
   const std::string goal = goal_name(options);
+  const bool by_genie_trial = asks_for_genie_trial(options);
   const Arithmetic arithmetic = arithmetic_option(options);
   CodeOptions code = code_options(options, block_length);
   code.reveal_order = options.has("reveal-order");
@@ -98,9 +102,14 @@ Designed design_as_asked(const Options& options) {
         block_length, path);
     return {design_from_mask(mask, qber, arithmetic, code, asked(options)), std::nullopt};
   }
+  const Goal wanted = goal_of(options, goal, qber);
+  if (by_genie_trial) {
+    return design_by_genie_trial(options, block_length, qber, arithmetic, wanted, code,
+                                 asked(options));
+  }
   const Ranking ranking = rank_indices(block_length, qber, construction_option(options, arithmetic),
                                        order_alpha_option(options), arithmetic);
-  return make_design(ranking, goal_of(options, goal, qber), code, asked(options));
+  return make_design(ranking, wanted, code, asked(options));
 }
 
 void print_account(std::ostream& out, const Designed& designed, const std::string& path) {
@@ -110,7 +119,7 @@ void print_account(std::ostream& out, const Designed& designed, const std::strin
     out << "The predicted FER is 1: nearly every block would fail.\n";
   }
   if (design.predicted.kind == "estimate" || design.predicted.kind == "upper-bound") {
-    if (design.arithmetic.kind != Arithmetic::Kind::exact) {
+    if (design.arithmetic.kind != Arithmetic::Kind::exact && !design.predicted.blocks) {
       out << "The prediction is for exact arithmetic; " << to_string(design.arithmetic)
           << " fails somewhat more often.\n";
     }

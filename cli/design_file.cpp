@@ -16,6 +16,7 @@ std::string prediction_sentence(const Prediction& predicted) {
     sentence += ", interval " + short_number(predicted.interval->first) + " to " +
                 short_number(predicted.interval->second);
   }
+  if (predicted.blocks) sentence += ", " + counted(*predicted.blocks, "block") + " tried";
   return sentence + ")";
 }
 

@@ -32,11 +32,24 @@ Reliability preferring_heavy_rows(Reliability reliability, double alpha) {
   return reliability;
 }
 
+Construction recorded_with_judge(Construction construction, double order_alpha,
+                                 const std::string& judge) {
+  if (order_alpha != 0) construction.parameters.emplace_back("order_alpha", order_alpha);
+  if (judge != construction.name) construction.parameters.emplace_back("judged_by", judge);
+  return construction;
+}
+
 std::string number_text(double value) {
   std::string text = std::to_string(value);
   text.erase(text.find_last_not_of('0') + 1);
   if (!text.empty() && text.back() == '.') text.pop_back();
   return text;
+}
+
+void require_order_alpha(double order_alpha) {
+  if (!(order_alpha >= 0 && order_alpha <= 10)) {
+    throw InputError("order weight " + number_text(order_alpha) + " is not from 0 to 10");
+  }
 }
 
 std::size_t frozen_for_efficiency(const Ranking& ranking, double efficiency, unsigned check_bits) {
@@ -109,26 +122,28 @@ Construction default_construction(const Arithmetic& arithmetic) {
 
 Construction recorded_construction(const Construction& construction, double order_alpha,
                                    const Arithmetic& arithmetic) {
-  Construction recorded = construction;
-  if (order_alpha != 0) recorded.parameters.emplace_back("order_alpha", order_alpha);
-  if (is_order_only(construction)) {
-    recorded.parameters.emplace_back("judged_by", default_construction(arithmetic).name);
-  }
-  return recorded;
+  return recorded_with_judge(
+      construction, order_alpha,
+      is_order_only(construction) ? default_construction(arithmetic).name : construction.name);
 }
 
 Ranking rank_indices(BlockLength block_length, double qber, const Construction& construction,
                      double order_alpha, const Arithmetic& arithmetic) {
   require_error_rate(qber, "QBER");
-  if (!(order_alpha >= 0 && order_alpha <= 10)) {
-    throw InputError("order weight " + number_text(order_alpha) + " is not from 0 to 10");
-  }
+  require_order_alpha(order_alpha);
   if (order_alpha != 0 && is_order_only(construction)) {
     throw InputError("construction '" + construction.name +
                      "' is an order without probabilities, which row weights cannot be mixed into");
   }
-  Judgement own = judge_by(construction, block_length, qber, arithmetic);
-  Ranking ranking{block_length, qber, construction, order_alpha, arithmetic, {}, {}, {}, {}};
+  return rank_by(block_length, qber, judge_by(construction, block_length, qber, arithmetic),
+                 order_alpha, arithmetic);
+}
+
+Ranking rank_by(BlockLength block_length, double qber, Judgement own, double order_alpha,
+                const Arithmetic& arithmetic) {
+  require_error_rate(qber, "QBER");
+  require_order_alpha(order_alpha);
+  Ranking ranking{block_length, qber, own.by, order_alpha, arithmetic, {}, {}, {}, {}};
   ranking.order = freezing_order(
       order_alpha == 0 ? own.reliability : preferring_heavy_rows(own.reliability, order_alpha));
   ranking.judged = own.reliability.kind == ReliabilityKind::order_only
@@ -149,7 +164,7 @@ Designed make_design(const Ranking& ranking, const Goal& goal, const CodeOptions
   Design design{
       {freeze_first(ranking.order, frozen_count), code.precoding, code.check_bits},
       ranking.qber,
-      recorded_construction(ranking.construction, ranking.order_alpha, ranking.arithmetic),
+      recorded_with_judge(ranking.construction, ranking.order_alpha, ranking.judged.by.name),
       1,
       ranking.arithmetic,
       {},

@@ -44,6 +44,10 @@ struct Ranking {
 Ranking rank_indices(BlockLength block_length, double qber, const Construction& construction,
                      double order_alpha, const Arithmetic& arithmetic);
 
+// The same from reliabilities at hand, also of a construction that the catalogue does not know.
+Ranking rank_by(BlockLength block_length, double qber, Judgement own, double order_alpha,
+                const Arithmetic& arithmetic);
+
 // The construction as a design records it: with the order's weight, and with what judged an order.
 Construction recorded_construction(const Construction& construction, double order_alpha,
                                    const Arithmetic& arithmetic);
