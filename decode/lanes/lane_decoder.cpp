@@ -19,6 +19,10 @@ constexpr std::uint64_t kLowerBits[6] = {0x5555555555555555U, 0x3333333333333333
                                          0x0F0F0F0F0F0F0F0FU, 0x00FF00FF00FF00FFU,
                                          0x0000FFFF0000FFFFU, 0x00000000FFFFFFFFU};
 
+// Words between planes. Their lengths are powers of two, and without it all of them would fall into
+// the same few sets of the first-level cache.
+constexpr std::size_t kPlanePadding = 40;
+
 HWY_INLINE std::uint64_t LowMask(std::size_t bits) {
   return bits >= 64 ? ~std::uint64_t{0} : (std::uint64_t{1} << bits) - 1;
 }
@@ -85,7 +89,7 @@ class Walk {
       const std::size_t words = WordsAt(level);
       const auto take = [&scratch, words] {
         std::uint64_t* const plane = scratch;
-        scratch += words;
+        scratch += words >= kPlanePadding ? words + kPlanePadding : words;
         return plane;
       };
       levels_[level].m[0] = take();
@@ -140,6 +144,10 @@ class Walk {
     const std::size_t half = WordsAt(level - 1);
     DecodeLeft<kShape>(node, level, first, half);
     DecodeRight<kShape>(node, level, first, half);
+  }
+
+  // x_left += x_right.
+  void Combine(std::size_t first, std::size_t half) const {
     std::uint64_t* x = x_ + first;
     OverWords(half, [x, half](auto d, std::size_t i) HWY_ATTR {
       hn::Store(hn::Xor(hn::Load(d, x + i), hn::Load(d, x + half + i)), d, x + i);
@@ -176,24 +184,28 @@ class Walk {
     Descend<kShape>(2 * node, level - 1, first);
   }
 
+  // Decodes the right child and adds its result to the left one's.
   template <Shape kShape>
   void DecodeRight(std::size_t node, unsigned level, std::size_t first, std::size_t half) {
     const NodeKind kind = kinds_[2 * node + 1];
     if (kind == NodeKind::all_frozen) {
       TransformAt(first + half, level - 1);
+      Combine(first, half);
       return;
     }
     const LevelPlanes from = levels_[level];
-    const std::uint64_t* bits = x_ + first;
+    std::uint64_t* const bits = x_ + first;
     if (kind == NodeKind::all_open) {
-      std::uint64_t* x = x_ + first + half;
+      std::uint64_t* const right = bits + half;
       if constexpr (kShape == Shape::constant) {
-        std::fill_n(x, half, 0);
+        std::fill_n(right, half, 0);
       } else {
         OverWords(half, [&](auto d, std::size_t i) HWY_ATTR {
-          hn::Store(SignOfG<kShape>(LoadMessage<kShape>(d, from, i),
-                                    LoadMessage<kShape>(d, from, half + i), hn::Load(d, bits + i)),
-                    d, x + i);
+          const auto left = hn::Load(d, bits + i);
+          const auto sign = SignOfG<kShape>(LoadMessage<kShape>(d, from, i),
+                                            LoadMessage<kShape>(d, from, half + i), left);
+          hn::Store(sign, d, right + i);
+          hn::Store(hn::Xor(left, sign), d, bits + i);
         });
       }
       return;
@@ -213,6 +225,7 @@ class Walk {
       }
     });
     Descend<kNext>(2 * node + 1, level - 1, first + half);
+    Combine(first, half);
   }
 
   // On to a mixed child, which may fit one word.
@@ -313,11 +326,11 @@ void LaneDecoder::decode(Span<const std::uint64_t> difference_rows, unsigned lan
   if (difference_rows.size() != words || error_rows.size() != words) {
     throw std::invalid_argument("a batch of another size");
   }
-  // Every level below the root: at most 4 planes of half, a quarter, ... of the batch, and at least
-  // one vector each.
+  // Every level below the root: at most 4 planes of half, a quarter, ... of the batch, and room for
+  // a vector and the padding each.
   KeyWords& scratch = scratch_.local();
-  constexpr std::size_t kVectorWords = 8;
-  scratch.resize(4 * (words + kVectorWords * (program_.block_length.log2() + 1)));
+  constexpr std::size_t kRoomWords = 48;
+  scratch.resize(4 * (words + kRoomWords * (program_.block_length.log2() + 1)));
   // Vector loads want alignment, which KeyWords give; other memory goes through a copy.
   KeyWords aligned;
   std::uint64_t* x = error_rows.data();
