@@ -1,7 +1,7 @@
 // Metric weights and the never-fork set of list decoding in planes:W, from exact density evolution.
 //
 // The exact path metric of list decoding is the sum of ln(1 + exp(-(1-2u) LLR)) over the indices
-// (A. Balatsoukas-Stimming, M. Bastani Parizi, A. Burg, IEEE Trans. SP 63(19), 2015, eq. (10)).
+// (A. Balatsoukas-Stimming, M. Bastani Parizi, A. Burg, IEEE Trans. SP 63(19), 2015, Theorem 1).
 // A list decoder of planes puts w m / 2 in the place of |LLR|, m the magnitude and w a node's
 // weight in half nats.
 //
@@ -19,6 +19,9 @@
 //
 // Where a node is perfect, nothing but the largest weight is right, and where it is useless,
 // 0: a disagreement there is a coin toss, and a weight of 1 would charge half of all paths for it.
+// A node of length messages counts as useless where the two densities of its bit differ by less
+// than 1e-10 / length in total variation: then no weight beats 0 by more than 1e-10 nats times half
+// of the largest LLR that it stands for.
 #pragma once
 
 #include "polar/arithmetic.h"
