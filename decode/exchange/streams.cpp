@@ -54,6 +54,14 @@ std::string behind_links(const std::string& path) {
   return real ? std::string(real.get()) : path;
 }
 
+// Renames without a window between the check that the target is not there and the act. File systems
+// that cannot do it at once can mostly link.
+bool rename_onto_nothing(const std::string& from, const std::string& to) {
+  if (::renameat2(AT_FDCWD, from.c_str(), AT_FDCWD, to.c_str(), RENAME_NOREPLACE) == 0) return true;
+  if (errno != EINVAL && errno != ENOSYS) return false;
+  return ::link(from.c_str(), to.c_str()) == 0 && ::unlink(from.c_str()) == 0;
+}
+
 }  // namespace
 
 std::size_t MemorySource::read(Span<std::uint8_t> bytes) {
@@ -179,11 +187,8 @@ void FileSink::finish() {
 void FileSink::commit() {
   finish();
   if (temporary_.empty()) return;
-  // link() instead of rename() where the target must not be there: no window between a check and
-  // the act.
   if (replace_ == FileReplace::refuse_if_there) {
-    if (::link(temporary_.c_str(), target_.c_str()) != 0) fail(errno);
-    ::unlink(temporary_.c_str());
+    if (!rename_onto_nothing(temporary_, target_)) fail(errno);
   } else if (::rename(temporary_.c_str(), target_.c_str()) != 0) {
     fail(errno);
   }
