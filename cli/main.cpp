@@ -21,6 +21,7 @@ constexpr Command kCommands[] = {
     {"limits", "what no one-way code can beat at a block length, QBER and FER", run_limits},
     {"sample", "make a pair of strings that differ with a given QBER, for demos and tests",
      run_sample},
+    {"trial", "run a design against random errors and count the blocks that fail", run_trial},
     {"syndrome", "sender: key in, message out", run_syndrome},
     {"reconcile", "receiver: key and message in, provisional key and receipt out", run_reconcile},
     {"settle", "sender: check the receipt's tags, write the settled key and the verdict",

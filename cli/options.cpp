@@ -214,15 +214,18 @@ std::optional<std::string> Options::optional_text(const std::string& name) const
   return text(name);
 }
 
-double Options::number(const std::string& name) const {
-  const std::string word = text(name);
+double parse_number(const std::string& word, const std::string& what) {
   double value = 0;
   const char* end = word.data() + word.size();
   const auto parsed = std::from_chars(word.data(), end, value);
   if (parsed.ec != std::errc() || parsed.ptr != end || !std::isfinite(value)) {
-    throw InputError("--" + name + ": '" + word + "' is not a number");
+    throw InputError(what + ": '" + word + "' is not a number");
   }
   return value;
+}
+
+double Options::number(const std::string& name) const {
+  return parse_number(text(name), "--" + name);
 }
 
 std::uint64_t Options::whole(const std::string& name) const {

@@ -65,6 +65,9 @@ class Options {
   std::vector<std::pair<std::string, std::vector<std::string>>> given_;
 };
 
+// The whole word as a finite number. Throws InputError "WHAT: 'WORD' is not a number".
+double parse_number(const std::string& word, const std::string& what);
+
 // Throws InputError when a file would be written twice, or is read and written.
 void require_distinct_files(const std::vector<std::string>& inputs,
                             const std::vector<std::string>& outputs);

@@ -622,8 +622,8 @@ TEST(Help, OfEveryCommandShowsAnExample) {
   const Folder folder;
   const CommandResult overview = run_command(folder, {"--help"});
   EXPECT_EQ(overview.status, 0);
-  for (const std::string command :
-       {"design", "inspect", "limits", "sample", "syndrome", "reconcile", "settle", "confirm"}) {
+  for (const std::string command : {"design", "batch", "inspect", "limits", "sample", "trial",
+                                    "syndrome", "reconcile", "settle", "confirm"}) {
     EXPECT_NE(overview.out.find("\n  " + command), std::string::npos) << command;
     const CommandResult help = run_command(folder, {command, "--help"});
     EXPECT_EQ(help.status, 0);
