@@ -125,12 +125,21 @@ void print_account(std::ostream& out, const Designed& designed, const std::strin
     }
   }
   if (designed.net_key_rate) {
-    out << (*designed.net_key_rate > 0
-                ? "Net key, failed blocks discarded: " + fixed(*designed.net_key_rate, 4) +
-                      " bits a sifted bit.\n"
-                : std::string("No key at this error rate.\n"));
+    out << "Net key, failed blocks discarded: " << fixed(*designed.net_key_rate, 4)
+        << " bits a sifted bit.\n";
   }
   out << describe(design);
+}
+
+// No frozen count leaves a key, so there is no best one and no file.
+int report_no_key(const Options& options, double net_key_rate) {
+  if (options.json()) {
+    std::cout << Json{{"file", nullptr}, {"net_key_rate", net_key_rate}}.dump(2) << '\n';
+  } else if (!options.quiet()) {
+    std::cout << "No key at this error rate: whatever the frozen count, failed blocks and leakage "
+                 "leave nothing. No design was written.\n";
+  }
+  return kNotAsAsked;
 }
 
 }  // namespace
@@ -143,6 +152,9 @@ int run_design(const std::vector<std::string>& arguments) {
   if (options.has("mask")) inputs.push_back(options.text("mask"));
   require_distinct_files(inputs, {path});
   const Designed designed = design_as_asked(options);
+  if (designed.net_key_rate && *designed.net_key_rate <= 0) {
+    return report_no_key(options, *designed.net_key_rate);
+  }
   FileSink file(path);
   file.write(design_to_json(designed.design));
   file.commit();
@@ -154,7 +166,7 @@ int run_design(const std::vector<std::string>& arguments) {
   } else if (!options.quiet()) {
     print_account(options.account(), designed, path);
   }
-  return designed.net_key_rate && *designed.net_key_rate <= 0 ? kNotAsAsked : kDone;
+  return kDone;
 }
 
 }  // namespace frostline::cli

@@ -618,6 +618,15 @@ TEST(Quiet, PrintsNothing) {
   EXPECT_EQ(result.err, "");
 }
 
+TEST(Design, WritesNothingWhereNoKeyIsLeft) {
+  const Folder folder;
+  const CommandResult result = run_command(
+      folder, {"design", "--block-length", "1024", "--qber", "0.11", "--best-key", "-o", "d"});
+  EXPECT_EQ(result.status, 1);
+  EXPECT_EQ(result.out.rfind("No key at this error rate", 0), 0U) << result.out;
+  EXPECT_TRUE(folder.names().empty());
+}
+
 TEST(Help, OfEveryCommandShowsAnExample) {
   const Folder folder;
   const CommandResult overview = run_command(folder, {"--help"});
