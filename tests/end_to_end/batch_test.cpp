@@ -60,7 +60,7 @@ TEST(Batch, MakesEveryDesignOfTheGridAndAnIndex) {
   EXPECT_EQ(std::count(csv.begin(), csv.end(), '\n'), 17);
 }
 
-TEST(Batch, WritesTheSameBytesAsDesignAndForAnyNumberOfThreads) {
+TEST(Batch, WritesTheSameBytesAsDesignForAnyThreadsAndVectors) {
   const Folder folder;
   for (const std::string threads : {"1", "2", "8"}) {
     ASSERT_EQ(run_command(folder, kSmallGrid + Arguments{"-o", "sets" + threads, "--threads",
@@ -72,6 +72,9 @@ TEST(Batch, WritesTheSameBytesAsDesignAndForAnyNumberOfThreads) {
   EXPECT_EQ(one.size(), 18U);
   EXPECT_EQ(one, tree(folder.path("sets2")));
   EXPECT_EQ(one, tree(folder.path("sets8")));
+  ASSERT_EQ(run_command(folder, kSmallGrid + Arguments{"-o", "scalar", "--simd", "scalar"}).status,
+            0);
+  EXPECT_EQ(one, tree(folder.path("scalar")));
   ASSERT_EQ(run_command(folder, {"design", "--block-length", "256", "--qber", "0.05", "--fer",
                                  "0.01", "-o", "d.json", "--quiet"})
                 .status,
