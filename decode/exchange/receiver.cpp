@@ -60,17 +60,19 @@ void reconcile_batch(const SyndromeFormer& former, const DifferenceCounter& coun
   KeyWords difference = work.rows;
   former.to_public_rows(difference, lanes);
   BitString syndrome = former.gather(difference, lanes);
+  // Before the decoder's answer is known, so that it may use the check bits to choose paths.
+  BitString checks = lane_checks(rows_as_blocks(work.rows, cut, work.batch), code, lanes);
+  checks ^= work.record.checks;
   syndrome ^= work.record.syndrome;
   former.scatter(syndrome, lanes, difference);
 
   KeyWords error_rows(difference.size());
-  decoder.decode(difference, lanes, error_rows);
+  decoder.decode({lanes, difference, checks.words()}, error_rows);
   for (std::size_t i = 0; i < error_rows.size(); ++i) work.rows[i] ^= error_rows[i];
   work.corrected = rows_as_blocks(work.rows, cut, work.batch);
   work.errors = rows_as_blocks(error_rows, cut, work.batch);
 
-  BitString checks = lane_checks(work.corrected, code, lanes);
-  checks ^= work.record.checks;
+  checks ^= lane_checks(work.errors, code, lanes);
   work.lane_agrees = BitString(lanes);
   for (unsigned lane = 0; lane < lanes; ++lane) {
     bool agrees = true;

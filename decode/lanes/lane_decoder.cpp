@@ -315,15 +315,15 @@ LaneDecoder::LaneDecoder(const Code& code, const Arithmetic& arithmetic)
   }
 }
 
-void LaneDecoder::decode(Span<const std::uint64_t> difference_rows, unsigned lanes,
-                         Span<std::uint64_t> error_rows) const {
+void LaneDecoder::decode(const BatchDifference& difference, Span<std::uint64_t> error_rows) const {
+  const unsigned lanes = difference.lanes;
   unsigned log2_lanes = 0;
   while ((1U << log2_lanes) < lanes && log2_lanes < 10) ++log2_lanes;
   if (lanes == 0 || lanes > kMaxLanes || (1U << log2_lanes) != lanes) {
     throw std::invalid_argument("lanes must be a power of two from 1 to 512");
   }
   const std::size_t words = words_for(program_.block_length.bits() * lanes);
-  if (difference_rows.size() != words || error_rows.size() != words) {
+  if (difference.rows.size() != words || error_rows.size() != words) {
     throw std::invalid_argument("a batch of another size");
   }
   // Every level below the root: at most 4 planes of half, a quarter, ... of the batch, and room for
@@ -338,7 +338,7 @@ void LaneDecoder::decode(Span<const std::uint64_t> difference_rows, unsigned lan
     aligned.resize(words);
     x = aligned.data();
   }
-  std::copy(difference_rows.begin(), difference_rows.end(), x);
+  std::copy(difference.rows.begin(), difference.rows.end(), x);
   HWY_DYNAMIC_DISPATCH(DecodeBatch)(program_, planes_, log2_lanes, scratch.data(), x);
   if (x != error_rows.data()) std::copy_n(x, words, error_rows.data());
 }

@@ -25,8 +25,7 @@ class LaneDecoder : public BatchDecoder {
   LaneDecoder(const Code& code, const Arithmetic& arithmetic);
 
   // Memory: N lanes bytes a thread, kept for the next batch.
-  void decode(Span<const std::uint64_t> difference_rows, unsigned lanes,
-              Span<std::uint64_t> error_rows) const override;
+  void decode(const BatchDifference& difference, Span<std::uint64_t> error_rows) const override;
 
  private:
   LaneProgram program_;

@@ -10,12 +10,13 @@ namespace frostline {
 ReferenceBatchDecoder::ReferenceBatchDecoder(Code code, Arithmetic arithmetic, double qber)
     : code_(std::move(code)), arithmetic_(arithmetic), qber_(qber) {}
 
-void ReferenceBatchDecoder::decode(Span<const std::uint64_t> difference_rows, unsigned lanes,
+void ReferenceBatchDecoder::decode(const BatchDifference& difference,
                                    Span<std::uint64_t> error_rows) const {
+  const unsigned lanes = difference.lanes;
   const BlockLength block_length = code_.block_length();
   const std::size_t bits = block_length.bits();
   KeyWords blocks(words_for(bits * lanes));
-  lanes_to_blocks(difference_rows, block_length, lanes, blocks);
+  lanes_to_blocks(difference.rows, block_length, lanes, blocks);
   std::vector<BitString> errors(lanes);
   // A context of its own: a run around this one that is cancelled, by an exception in another
   // batch, would cancel the loop too and leave lanes that nobody decoded.
@@ -23,9 +24,9 @@ void ReferenceBatchDecoder::decode(Span<const std::uint64_t> difference_rows, un
   tbb::parallel_for(
       0U, lanes,
       [&](unsigned lane) {
-        BitString difference(bits);
-        copy_bits(blocks, bits * lane, difference.words(), 0, bits);
-        errors[lane] = decode_sc(code_, arithmetic_, qber_, difference).errors;
+        BitString of_lane(bits);
+        copy_bits(blocks, bits * lane, of_lane.words(), 0, bits);
+        errors[lane] = decode_sc(code_, arithmetic_, qber_, of_lane).errors;
       },
       context);
   // Blocks shorter than a word share words, so they are put together by one thread.

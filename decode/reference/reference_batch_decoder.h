@@ -12,8 +12,7 @@ class ReferenceBatchDecoder : public BatchDecoder {
  public:
   // qber: 0 < p < 0.5, used by exact arithmetic only.
   ReferenceBatchDecoder(Code code, Arithmetic arithmetic, double qber);
-  void decode(Span<const std::uint64_t> difference_rows, unsigned lanes,
-              Span<std::uint64_t> error_rows) const override;
+  void decode(const BatchDifference& difference, Span<std::uint64_t> error_rows) const override;
 
  private:
   Code code_;

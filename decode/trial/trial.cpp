@@ -10,6 +10,7 @@
 #include <vector>
 
 #include "decode/exchange/cut.h"
+#include "decode/exchange/lane_checks.h"
 #include "polar/check_bits.h"
 #include "polar/error.h"
 #include "polar/lanes.h"
@@ -49,25 +50,27 @@ class BatchTrial {
     KeyWords difference = errors;
     former_.to_public_rows(difference, lanes_);
     former_.scatter(former_.gather(difference, lanes_), lanes_, difference);
+    KeyWords patterns(errors.size());
+    lanes_to_blocks(errors, block_length, lanes_, patterns);
+    const BitString checks = lane_checks(patterns, code_, lanes_);
     KeyWords found(errors.size());
     const auto begin = Clock::now();
-    decoder_.decode(difference, lanes_, found);
+    decoder_.decode({lanes_, difference, checks.words()}, found);
     BatchOutcome outcome;
     outcome.seconds = std::chrono::duration<double>(Clock::now() - begin).count();
     outcome.first_block = first_block;
-    count(errors, found, outcome);
+    count(errors, patterns, found, outcome);
     return outcome;
   }
 
  private:
-  void count(const KeyWords& errors, KeyWords& found, BatchOutcome& outcome) const {
+  void count(const KeyWords& errors, const KeyWords& patterns, KeyWords& found,
+             BatchOutcome& outcome) const {
     const BlockLength block_length = code_.block_length();
     const std::size_t bits = block_length.bits();
     for (std::size_t i = 0; i < found.size(); ++i) found[i] ^= errors[i];
     KeyWords residues(found.size());
-    KeyWords patterns(found.size());
     lanes_to_blocks(found, block_length, lanes_, residues);
-    lanes_to_blocks(errors, block_length, lanes_, patterns);
     KeyWords block(words_for(bits));
     for (unsigned lane = 0; lane < lanes_; ++lane) {
       copy_bits(patterns, bits * lane, block, 0, bits);

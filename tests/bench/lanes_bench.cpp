@@ -48,7 +48,7 @@ void LaneDecoding(benchmark::State& state) {
   const LaneDecoder decoder(setup.code, Arithmetic::planes_of(3));
   KeyWords errors(setup.difference.size());
   for (auto _ : state) {
-    decoder.decode(setup.difference, lanes, errors);
+    decoder.decode({lanes, setup.difference, {}}, errors);
     benchmark::ClobberMemory();
   }
   report(state, setup.difference.size() * 64);

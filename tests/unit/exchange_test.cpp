@@ -29,9 +29,8 @@ class ScriptedDecoder : public BatchDecoder {
  public:
   using Script = std::function<void(Span<const std::uint64_t>, unsigned, Span<std::uint64_t>)>;
   explicit ScriptedDecoder(Script script) : script_(std::move(script)) {}
-  void decode(Span<const std::uint64_t> difference_rows, unsigned lanes,
-              Span<std::uint64_t> error_rows) const override {
-    script_(difference_rows, lanes, error_rows);
+  void decode(const BatchDifference& difference, Span<std::uint64_t> error_rows) const override {
+    script_(difference.rows, difference.lanes, error_rows);
   }
 
  private:
@@ -205,7 +204,7 @@ TEST_F(Exchange, ABatchIsDecodedToItsEndInACancelledRun) {
       0, 1,
       [&](int) {
         context.cancel_group_execution();
-        decoder->decode(differences, kLanes, errors);
+        decoder->decode({kLanes, differences, {}}, errors);
       },
       context);
   EXPECT_EQ(count_ones(errors), 0U);

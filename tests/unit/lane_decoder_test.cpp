@@ -24,7 +24,7 @@ class WithSimd {
 
 KeyWords decoded(const BatchDecoder& decoder, const KeyWords& difference, unsigned lanes) {
   KeyWords errors(difference.size());
-  decoder.decode(difference, lanes, errors);
+  decoder.decode({lanes, difference, {}}, errors);
   return errors;
 }
 
@@ -169,7 +169,7 @@ TEST(LaneDecoder, ServesOnlyWhatItIsBuiltFor) {
   EXPECT_THROW(LaneDecoder(precoded, Arithmetic::planes_of(3)), std::invalid_argument);
   const LaneDecoder decoder(plain, Arithmetic::planes_of(3));
   KeyWords rows(3);
-  EXPECT_THROW(decoder.decode(rows, 3, rows), std::invalid_argument);
+  EXPECT_THROW(decoder.decode({3, rows, {}}, rows), std::invalid_argument);
 }
 
 }  // namespace
