@@ -4,25 +4,54 @@
 #include <string>
 
 #include "decode/lanes/lane_decoder.h"
+#include "decode/reference/list_decoder.h"
 #include "decode/reference/reference_batch_decoder.h"
+#include "decode/reference/reference_list_batch_decoder.h"
 #include "polar/error.h"
 
 namespace frostline {
+namespace {
+
+void require_lists(const std::vector<unsigned>& lists) {
+  if (lists.empty()) throw std::invalid_argument("a decoder without passes");
+  unsigned last = 0;
+  for (const unsigned list : lists) {
+    if (list == 0 || (list & (list - 1)) != 0 || list > kLargestReferenceList) {
+      throw InputError("list size " + std::to_string(list) +
+                       " is not a power of two from 1 to 128");
+    }
+    if (list <= last) {
+      throw InputError("list sizes do not ascend: " + std::to_string(last) + ", then " +
+                       std::to_string(list));
+    }
+    last = list;
+  }
+}
+
+std::unique_ptr<BatchDecoder> make_pass(const Design& design, unsigned list,
+                                        const std::shared_ptr<const MetricWeights>& weights) {
+  if (list > 1) {
+    return std::make_unique<ReferenceListBatchDecoder>(design.code, design.arithmetic, design.qber,
+                                                       list, weights);
+  }
+  if (LaneDecoder::serves(design.code, design.arithmetic)) {
+    return std::make_unique<LaneDecoder>(design.code, design.arithmetic);
+  }
+  return std::make_unique<ReferenceBatchDecoder>(design.code, design.arithmetic, design.qber);
+}
+
+}  // namespace
 
 std::unique_ptr<BatchDecoder> make_batch_decoder(const Design& design) {
   return make_batch_decoder(design, {{design.list}, nullptr});
 }
 
 std::unique_ptr<BatchDecoder> make_batch_decoder(const Design& design, const DecoderPlan& plan) {
-  if (plan.lists.empty()) throw std::invalid_argument("a decoder without passes");
-  if (plan.lists != std::vector<unsigned>{1}) {
-    throw InputError("list size " + std::to_string(plan.lists.back()) +
-                     " is asked for; this version decodes with list size 1");
+  require_lists(plan.lists);
+  if (plan.lists.size() > 1) {
+    throw InputError("list sizes of several passes are asked for; this version makes one pass");
   }
-  if (LaneDecoder::serves(design.code, design.arithmetic)) {
-    return std::make_unique<LaneDecoder>(design.code, design.arithmetic);
-  }
-  return std::make_unique<ReferenceBatchDecoder>(design.code, design.arithmetic, design.qber);
+  return make_pass(design, plan.lists.back(), plan.weights);
 }
 
 }  // namespace frostline

@@ -47,7 +47,9 @@ struct DecoderPlan {
   std::shared_ptr<const MetricWeights> weights;
 };
 
-// Throws InputError when there is no such decoder.
+// Throws InputError when there is no such decoder, or a list size is not a power of two from 1 to
+// 128 or not above the one before; std::invalid_argument when a list of more than one path lacks
+// the weights.
 std::unique_ptr<BatchDecoder> make_batch_decoder(const Design& design, const DecoderPlan& plan);
 // The decoder that the design names, which must be of list size 1 (InputError otherwise).
 std::unique_ptr<BatchDecoder> make_batch_decoder(const Design& design);

@@ -3,11 +3,10 @@
 // A set of rules has
 //   Message        what a node holds for each of its positions
 //   Chain          what a node that starts at index 0 holds: all its positions hold the same, as
-//   all
-//                  channel LLRs are equal and f treats them alike. channel() is the root's.
+//                  all channel LLRs are equal and f treats them alike. channel() is the root's.
 //   f(a, b), g(a, b, bit), decide(message)      the rules of C. Leroux et al., IEEE Trans. SP
-//   61(2),
-//                  2013, eq. (3), (4), and of DEVELOPERS.md, "Arithmetics"; a is of the first half
+//                  61(2), 2013, eq. (3), (4), and of DEVELOPERS.md, "Arithmetics"; a is of the
+//                  first half
 //   chain_f(c), chain_g(c, bit), chain_decide(c)  the same on a node of the chain
 //   decisions_stand(messages)  whether successive cancellation of an all-open node with these
 //                  messages surely returns their decisions, so that it need not be carried out
@@ -19,6 +18,7 @@
 #include <cstdlib>
 #include <stdexcept>
 
+#include "polar/arithmetic.h"
 #include "polar/span.h"
 
 namespace frostline {
@@ -159,5 +159,19 @@ class IntegerRules {
   int largest_;
   int channel_;
 };
+
+// Runs function on the rules of an arithmetic. qber: of exact arithmetic.
+template <typename Function>
+auto with_rules(const Arithmetic& arithmetic, double qber, Function function) {
+  switch (arithmetic.kind) {
+    case Arithmetic::Kind::exact:
+      return function(ExactRules(qber));
+    case Arithmetic::Kind::planes:
+      return function(PlanesRules(arithmetic.planes));
+    case Arithmetic::Kind::integer:
+      return function(IntegerRules(arithmetic.llr_bits, arithmetic.channel_level));
+  }
+  throw std::invalid_argument("unknown kind of arithmetic");
+}
 
 }  // namespace frostline

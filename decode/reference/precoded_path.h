@@ -32,9 +32,16 @@ class PrecodedPath {
       if (!schedule.moves_state(j)) continue;
       unsigned byte = 0;
       for (std::size_t k = 0; k < 8; ++k) byte |= unsigned{u[8 * j + k]} << k;
-      const unsigned open_places = ~unsigned{schedule.frozen_places(j)};
-      state_ = state8_advance(state_, static_cast<std::uint8_t>(byte & open_places));
+      byte_decided(schedule, j, byte);
     }
+  }
+
+  // Byte j of u has been decided; bit k of byte is u_8j+k. REQUIRES: called for all bytes in
+  // increasing order; those where the schedule does not move the state may be left out.
+  void byte_decided(const PrecodingSchedule& schedule, std::size_t j, unsigned byte) {
+    if (!schedule.moves_state(j)) return;
+    const unsigned open_places = ~unsigned{schedule.frozen_places(j)};
+    state_ = state8_advance(state_, static_cast<std::uint8_t>(byte & open_places));
   }
 
  private:

@@ -1,9 +1,9 @@
 #include "decode/reference/reference_batch_decoder.h"
 
-#include <tbb/parallel_for.h>
+#include <utility>
 
+#include "decode/reference/lane_by_lane.h"
 #include "decode/reference/successive_cancellation.h"
-#include "polar/lanes.h"
 
 namespace frostline {
 
@@ -12,28 +12,12 @@ ReferenceBatchDecoder::ReferenceBatchDecoder(Code code, Arithmetic arithmetic, d
 
 void ReferenceBatchDecoder::decode(const BatchDifference& difference,
                                    Span<std::uint64_t> error_rows) const {
-  const unsigned lanes = difference.lanes;
-  const BlockLength block_length = code_.block_length();
-  const std::size_t bits = block_length.bits();
-  KeyWords blocks(words_for(bits * lanes));
-  lanes_to_blocks(difference.rows, block_length, lanes, blocks);
-  std::vector<BitString> errors(lanes);
-  // A context of its own: a run around this one that is cancelled, by an exception in another
-  // batch, would cancel the loop too and leave lanes that nobody decoded.
-  tbb::task_group_context context(tbb::task_group_context::isolated);
-  tbb::parallel_for(
-      0U, lanes,
-      [&](unsigned lane) {
-        BitString of_lane(bits);
-        copy_bits(blocks, bits * lane, of_lane.words(), 0, bits);
-        errors[lane] = decode_sc(code_, arithmetic_, qber_, of_lane).errors;
+  decode_lane_by_lane(
+      difference, code_.block_length(), 0,
+      [&](const BitString& of_block, std::uint32_t) {
+        return decode_sc(code_, arithmetic_, qber_, of_block).errors;
       },
-      context);
-  // Blocks shorter than a word share words, so they are put together by one thread.
-  for (unsigned lane = 0; lane < lanes; ++lane) {
-    copy_bits(errors[lane].words(), 0, blocks, bits * lane, bits);
-  }
-  blocks_to_lanes(blocks, block_length, lanes, error_rows);
+      error_rows);
 }
 
 }  // namespace frostline

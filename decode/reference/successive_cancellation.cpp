@@ -213,20 +213,6 @@ class GenieLeaves {
   BitString wrong_;
 };
 
-// Runs function on the rules of an arithmetic.
-template <typename Function>
-auto with_rules(const Arithmetic& arithmetic, double qber, Function function) {
-  switch (arithmetic.kind) {
-    case Arithmetic::Kind::exact:
-      return function(ExactRules(qber));
-    case Arithmetic::Kind::planes:
-      return function(PlanesRules(arithmetic.planes));
-    case Arithmetic::Kind::integer:
-      return function(IntegerRules(arithmetic.llr_bits, arithmetic.channel_level));
-  }
-  throw std::invalid_argument("unknown kind of arithmetic");
-}
-
 }  // namespace
 
 ScDecision decode_sc(const Code& code, const Arithmetic& arithmetic, double qber,
