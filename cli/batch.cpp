@@ -33,6 +33,7 @@ Options make_options() {
              "QBERs: values and ranges LOW:HIGH:STEP, for example 0.005,0.01:0.11:0.01")
       .value("fers", "LIST", "FER targets, for example 0.1,0.001 (0.1)")
       .value("constructions", "LIST", construction_list());
+  options.value("lists", "LIST", "list sizes of the decoder, powers of two from 1 to 128 (1)");
   add_code_options(options);
   options.value("output,o", "DIR", "the folder of the designs")
       .values("select", "N P", "print the design in DIR to use at this block length and QBER")
@@ -56,10 +57,18 @@ struct Cell {
 struct Grid {
   std::vector<Cell> cells;
   std::vector<double> fers;
+  std::vector<std::uint64_t> lists;
   Arithmetic arithmetic;
   double order_alpha = 0;
-  std::size_t size() const { return cells.size() * fers.size(); }
+  std::size_t size() const { return cells.size() * lists.size() * fers.size(); }
 };
+
+// Every FER target needs a FER that can be told.
+void require_estimate(const CodeOptions& code, const Arithmetic& arithmetic) {
+  if (has_list_estimate(arithmetic, code.list)) return;
+  throw InputError("--lists: the FER of list size " + std::to_string(code.list) + " in " +
+                   to_string(arithmetic) + " is not known");
+}
 
 Grid make_grid(const Options& options) {
   Grid grid;
@@ -67,6 +76,7 @@ Grid make_grid(const Options& options) {
   grid.order_alpha = order_alpha_option(options);
   grid.fers = parse_values(options.optional_text("fers").value_or("0.1"), "--fers");
   for (const double fer : grid.fers) require_probability(fer, "--fers");
+  grid.lists = parse_whole_values(options.optional_text("lists").value_or("1"), "--lists");
   const std::vector<double> qbers = parse_values(options.text("qbers"), "--qbers");
   for (const double qber : qbers) require_error_rate(qber, "--qbers");
   std::vector<Construction> constructions;
@@ -79,6 +89,9 @@ Grid make_grid(const Options& options) {
   }
   for (const std::uint64_t bits :
        parse_whole_values(options.text("block-lengths"), "--block-lengths")) {
+    for (const std::uint64_t list : grid.lists) {
+      require_estimate(code_options(options, BlockLength(bits), list), grid.arithmetic);
+    }
     for (const double qber : qbers) {
       for (const Construction& construction : constructions) {
         grid.cells.push_back({BlockLength(bits), qber, construction});
@@ -110,7 +123,9 @@ std::string file_name(const Grid& grid, const Cell& cell, double fer, const Code
     name += "-" + arithmetic;
   }
   if (grid.order_alpha != 0) name += "-weighted-" + shortest(grid.order_alpha);
-  if (code.precoding != Precoding::none) name += "-" + std::string(precoding_name(code.precoding));
+  if (code.list != 1) name += "-list-" + std::to_string(code.list);
+  const Precoding usual = code.list == 1 ? Precoding::none : Precoding::state8;
+  if (code.precoding != usual) name += "-" + std::string(precoding_name(code.precoding));
   if (named_check_bits) name += "-c" + std::to_string(code.check_bits);
   return name + ".design.json";
 }
@@ -134,7 +149,7 @@ std::optional<Design> existing_design(const std::string& path, const Design& wan
   if (design.code.block_length() != wanted_shape.code.block_length() ||
       design.qber != wanted_shape.qber ||
       !same_parameters(design.construction, wanted_shape.construction) ||
-      !(design.arithmetic == wanted_shape.arithmetic) ||
+      !(design.arithmetic == wanted_shape.arithmetic) || design.list != wanted_shape.list ||
       design.code.check_bits != wanted_shape.code.check_bits ||
       design.code.precoding != wanted_shape.code.precoding ||
       design.options != wanted_shape.options) {
@@ -152,11 +167,13 @@ class CellWorker {
 
   std::vector<LibraryEntry> work(const Cell& cell, const std::function<bool()>& stopped,
                                  const std::function<void(bool made)>& one_done) const {
-    const CodeOptions code = code_options(options_, cell.block_length);
     std::vector<LibraryEntry> entries;
     std::optional<Ranking> ranking;
-    for (const double fer : grid_.fers) {
+    for (std::size_t k = 0; k < grid_.lists.size() * grid_.fers.size(); ++k) {
       if (stopped()) return entries;
+      const double fer = grid_.fers[k % grid_.fers.size()];
+      const CodeOptions code =
+          code_options(options_, cell.block_length, grid_.lists[k / grid_.fers.size()]);
       const std::string file = file_name(grid_, cell, fer, code, options_.has("check-bits"));
       const std::string path = folder_ + "/" + file;
       std::optional<Design> design = existing_design(path, shape(cell, code, fer));
@@ -185,7 +202,7 @@ class CellWorker {
     return {std::move(empty),
             cell.qber,
             recorded_construction(cell.construction, grid_.order_alpha, grid_.arithmetic),
-            1,
+            code.list,
             grid_.arithmetic,
             {},
             {},
@@ -250,11 +267,12 @@ std::vector<LibraryEntry> run_grid(const Grid& grid, const Options& options,
 // One diagram a FER target, one curve a QBER, the limit dotted in the same colour.
 void plot_library(const std::string& path, std::vector<LibraryEntry> entries) {
   std::sort(entries.begin(), entries.end(), [](const LibraryEntry& a, const LibraryEntry& b) {
-    return std::tie(b.fer_target, a.qber, a.construction, a.block_length) <
-           std::tie(a.fer_target, b.qber, b.construction, b.block_length);
+    return std::tie(b.fer_target, a.qber, a.construction, a.list, a.block_length) <
+           std::tie(a.fer_target, b.qber, b.construction, b.list, b.block_length);
   });
   const auto same_curve = [](const LibraryEntry& a, const LibraryEntry& b) {
-    return a.fer_target == b.fer_target && a.qber == b.qber && a.construction == b.construction;
+    return a.fer_target == b.fer_target && a.qber == b.qber && a.construction == b.construction &&
+           a.list == b.list;
   };
   std::vector<Diagram> diagrams;
   double fer = -1;
@@ -272,6 +290,7 @@ void plot_library(const std::string& path, std::vector<LibraryEntry> entries) {
     const std::string color = " lw 1.5 lc " + std::to_string(diagram.series.size() / 2 % 8 + 1);
     std::string name = "p " + shortest(first->qber);
     if (first->construction != "density-evolution") name += " " + first->construction;
+    if (first->list != 1) name += " L " + std::to_string(first->list);
     Series f{name, "linespoints pt 7 ps 0.6" + color, {}};
     Series limit{"", "lines dt 3" + color, {}};
     const auto curve = first;
@@ -316,25 +335,30 @@ int select(const Options& options) {
     if (fers.size() != 1) throw InputError("batch: --select takes one FER target in --fers");
     fer = fers[0];
   }
+  const std::vector<std::uint64_t> lists =
+      parse_whole_values(options.optional_text("lists").value_or("1"), "--lists");
+  if (lists.size() != 1) throw InputError("batch: --select takes one list size in --lists");
   std::optional<LibraryEntry> best;
   for (const LibraryEntry& entry : read_index(folder)) {
     if (entry.block_length != block_length.bits() || entry.qber < qber) continue;
+    if (entry.list != lists[0]) continue;
     if (fer && entry.fer_target != *fer) continue;
     if (!best || better_choice(entry, *best)) best = entry;
   }
   if (!best) {
     throw InputError("'" + folder + "' has no design for block length " + words[0] + " and QBER " +
-                     words[1] + " or above");
+                     words[1] + " or above with list size " + std::to_string(lists[0]));
   }
   const std::string path = folder + "/" + best->file;
   const Design design = read_design(path);
   const double entropy = static_cast<double>(block_length.bits()) * binary_entropy(qber);
   const double efficiency = static_cast<double>(design.code.leakage_bits()) / entropy;
-  const Prediction here = predict(design.code.frozen, judge(block_length, qber, design.arithmetic));
+  const Prediction here = predict(design.code.frozen, judge(block_length, qber, design.arithmetic),
+                                  list_setting(design, qber, design.list));
   // What a design for the measured QBER would leak, by the same construction and FER target.
   const Ranking ranking = rank_indices(block_length, qber, default_construction(design.arithmetic),
                                        0, design.arithmetic);
-  const CodeOptions code{design.code.check_bits, design.code.precoding, false};
+  const CodeOptions code{design.code.check_bits, design.code.precoding, false, design.list};
   const Design fitted =
       make_design(ranking, {Goal::Kind::fer, best->fer_target, 0}, code, {}).design;
   const double mismatch = efficiency - static_cast<double>(fitted.code.leakage_bits()) / entropy;

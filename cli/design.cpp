@@ -25,6 +25,7 @@ Options make_options() {
       .value("phase-error", "E", "phase error rate for --best-key (the QBER)")
       .value("mask", "FILE", "your own frozen set instead of a construction's")
       .value("mask-format", "FORMAT", "text, hex or packed (text); 1 means frozen");
+  options.value("list", "L", "list size of the decoder, a power of two from 1 to 128 (1)");
   add_code_options(options);
   options.value("construction", "NAME",
                 "how indices are ranked: " + construction_list() + "; genie-trial");
@@ -34,7 +35,10 @@ Options make_options() {
       .computing()
       .epilogue(
           "Example: a fibre that shows 2.3 % errors, one block in ten may fail:\n"
-          "  frostline design --block-length 65536 --qber 0.023 --fer 0.1 -o link.design.json\n");
+          "  frostline design --block-length 65536 --qber 0.023 --fer 0.1 -o link.design.json\n"
+          "The same for a list decoder, which leaks less and is slower:\n"
+          "  frostline design --block-length 65536 --qber 0.023 --fer 0.1 --list 8 -o "
+          "link.design.json\n");
   return options;
 }
 
@@ -90,7 +94,8 @@ Designed design_as_asked(const Options& options) {
   const std::string goal = goal_name(options);
   const bool by_genie_trial = asks_for_genie_trial(options);
   const Arithmetic arithmetic = arithmetic_option(options);
-  CodeOptions code = code_options(options, block_length);
+  CodeOptions code =
+      code_options(options, block_length, options.optional_whole("list").value_or(1));
   code.reveal_order = options.has("reveal-order");
   if (goal == "mask") {
     if (options.has("construction") || options.has("order")) {
@@ -119,7 +124,10 @@ void print_account(std::ostream& out, const Designed& designed, const std::strin
     out << "The predicted FER is 1: nearly every block would fail.\n";
   }
   if (design.predicted.kind == "estimate" || design.predicted.kind == "upper-bound") {
-    if (design.arithmetic.kind != Arithmetic::Kind::exact && !design.predicted.blocks) {
+    if (design.list > 1) {
+      out << "The prediction is a table's, from lists measured before: try it with 'frostline "
+             "trial'.\n";
+    } else if (design.arithmetic.kind != Arithmetic::Kind::exact && !design.predicted.blocks) {
       out << "The prediction is for exact arithmetic; " << to_string(design.arithmetic)
           << " fails somewhat more often.\n";
     }

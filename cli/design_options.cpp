@@ -20,7 +20,7 @@ void add_code_options(Options& options) {
       .value("merge-letters", "MU", "output letters of degrading-merge, even, 4 to 1024 (32)")
       .value("order", "ORDER", "reliability, or weighted:ALPHA to prefer heavy rows (reliability)")
       .value("check-bits", "C", "0, 6, 8, 11, 16 or 24 (11 up to N = 2^11, 16 up to 2^13, then 24)")
-      .value("precoding", "NAME", "none or state8 (none)");
+      .value("precoding", "NAME", "none or state8 (state8 for lists, none for list size 1)");
 }
 
 std::string construction_list() {
@@ -57,13 +57,18 @@ double order_alpha_option(const Options& options) {
   throw InputError("--order: '" + order + "' is neither reliability nor weighted:ALPHA");
 }
 
-CodeOptions code_options(const Options& options, BlockLength block_length) {
+CodeOptions code_options(const Options& options, BlockLength block_length, std::uint64_t list) {
   CodeOptions code;
+  if (list == 0 || list > 128 || (list & (list - 1)) != 0) {
+    throw InputError("list size " + std::to_string(list) + " is not a power of two from 1 to 128");
+  }
+  code.list = static_cast<unsigned>(list);
   code.check_bits = static_cast<unsigned>(
       std::min(options.optional_whole("check-bits").value_or(default_check_bits(block_length)),
                kNoSuchWidth));
   require_check_width(code.check_bits);
-  code.precoding = parse_precoding(options.optional_text("precoding").value_or("none"));
+  code.precoding = parse_precoding(
+      options.optional_text("precoding").value_or(code.list == 1 ? "none" : "state8"));
   return code;
 }
 

@@ -22,7 +22,8 @@ Construction construction_option(const Options& options, const Arithmetic& arith
 Construction construction_named(const std::string& name, const Options& options);
 // alpha of --order weighted:ALPHA; 0 for reliability.
 double order_alpha_option(const Options& options);
-// Check bits (by block length where not given) and precoding.
-CodeOptions code_options(const Options& options, BlockLength block_length);
+// Check bits (by block length where not given), precoding (by list size), and the list size, which
+// must be a power of two from 1 to 128 (InputError otherwise).
+CodeOptions code_options(const Options& options, BlockLength block_length, std::uint64_t list);
 
 }  // namespace frostline::cli

@@ -2,6 +2,7 @@
 #include <algorithm>
 #include <cmath>
 #include <iostream>
+#include <optional>
 
 #include "cli/account.h"
 #include "cli/command.h"
@@ -10,6 +11,7 @@
 #include "cli/options.h"
 #include "cli/plot.h"
 #include "construct/designer.h"
+#include "construct/metric_weights.h"
 #include "construct/selection.h"
 #include "polar/error.h"
 #include "polar/limits.h"
@@ -45,9 +47,10 @@ struct Difference {
   std::size_t frozen_only_there = 0;
   Prediction here;
   Prediction there;
-  // Frozen counts that the judge's own order needs for the FER of each.
-  std::size_t best_here = 0;
-  std::size_t best_there = 0;
+  // Frozen counts that the judge's own order needs for the FER of each with its list size; none
+  // where that FER is not known.
+  std::optional<std::size_t> best_here;
+  std::optional<std::size_t> best_there;
   double entropy = 0;  // N h2(p)
 };
 
@@ -59,43 +62,54 @@ Difference differ(const Design& here, const Design& there, const Judgement& judg
     if (frozen_here && !frozen_there) ++difference.frozen_only_here;
     if (frozen_there && !frozen_here) ++difference.frozen_only_there;
   }
-  difference.here = predict(here.code.frozen, judgement);
-  difference.there = predict(there.code.frozen, judgement);
+  const ListSetting setting_here = list_setting(here, here.qber, here.list);
+  ListSetting setting_there = list_setting(there, here.qber, there.list);
+  setting_there.arithmetic = here.arithmetic;
+  difference.here = predict(here.code.frozen, judgement, setting_here);
+  difference.there = predict(there.code.frozen, judgement, setting_there);
   const std::vector<std::uint32_t> order = freezing_order(judgement.reliability);
   const std::vector<double> sums = union_sums(judgement.reliability, order);
   // A union of 1 or more is no target: what such a set could save is not told.
-  const auto best = [&](const Prediction& predicted) {
-    return smallest_frozen_count(sums, std::clamp(*predicted.fer, 1e-300, 1 - 1e-12));
+  const auto best = [&](const Prediction& predicted,
+                        const ListSetting& setting) -> std::optional<std::size_t> {
+    if (!predicted.fer) return std::nullopt;
+    const double fer = std::clamp(*predicted.fer, 1e-300, 1 - 1e-12);
+    return smallest_frozen_count(setting.list == 1 ? sums : list_fer_estimates(setting, sums), fer);
   };
-  difference.best_here = best(difference.here);
-  difference.best_there = best(difference.there);
+  difference.best_here = best(difference.here, setting_here);
+  difference.best_there = best(difference.there, setting_there);
   difference.entropy =
       static_cast<double>(here.code.block_length().bits()) * binary_entropy(here.qber);
   return difference;
 }
 
-Json side_json(const Design& design, const Prediction& predicted, std::size_t best,
+Json side_json(const Design& design, const Prediction& predicted, std::optional<std::size_t> best,
                std::size_t frozen_only, double entropy) {
+  const auto frozen = static_cast<double>(design.code.frozen.frozen_count());
   Json object;
   object["frozen_count"] = design.code.frozen.frozen_count();
   object["frozen_only_here"] = frozen_only;
   object["predicted"] = to_json(predicted);
-  object["syndrome_efficiency"] = static_cast<double>(design.code.frozen.frozen_count()) / entropy;
-  object["least_frozen_count_at_this_fer"] = best;
+  object["list"] = design.list;
+  object["syndrome_efficiency"] = frozen / entropy;
+  object["least_frozen_count_at_this_fer"] = best ? Json(*best) : Json(nullptr);
   object["cost_in_efficiency"] =
-      (static_cast<double>(design.code.frozen.frozen_count()) - static_cast<double>(best)) /
-      entropy;
+      best ? Json((frozen - static_cast<double>(*best)) / entropy) : Json(nullptr);
   return object;
 }
 
-std::string side_text(const Design& design, const Prediction& predicted, std::size_t best,
-                      std::size_t frozen_only, double entropy) {
+std::string side_text(const Design& design, const Prediction& predicted,
+                      std::optional<std::size_t> best, std::size_t frozen_only, double entropy) {
   const auto frozen = static_cast<double>(design.code.frozen.frozen_count());
-  return grouped(design.code.frozen.frozen_count()) + " frozen (" + grouped(frozen_only) +
-         " of them only here), syndrome f " + fixed(frozen / entropy, 4) + ", FER " +
-         prediction_sentence(predicted) + ", costs " +
-         fixed((frozen - static_cast<double>(best)) / entropy, 4) +
-         " in f against the best set of that FER";
+  std::string text = grouped(design.code.frozen.frozen_count()) + " frozen (" +
+                     grouped(frozen_only) + " of them only here), syndrome f " +
+                     fixed(frozen / entropy, 4) + ", list size " + std::to_string(design.list) +
+                     ", FER " + prediction_sentence(predicted);
+  if (best) {
+    text += ", costs " + fixed((frozen - static_cast<double>(*best)) / entropy, 4) +
+            " in f against the best set of that FER";
+  }
+  return text;
 }
 
 std::vector<Diagram> picture_of_indices(const Design& design, const Judgement& judgement) {
@@ -141,10 +155,16 @@ std::vector<Diagram> picture_of_indices(const Design& design, const Judgement& j
   return {sorted, where};
 }
 
+// With the design's own list size.
+Prediction predict_at(const Design& design, double qber) {
+  return predict(design.code.frozen, judge(design.code.block_length(), qber, design.arithmetic),
+                 list_setting(design, qber, design.list));
+}
+
 std::vector<Diagram> picture_of_drift(const Design& design, double qber) {
   Diagram diagram{"Predicted FER of the frozen set when the QBER drifts",
                   "QBER",
-                  "FER (union over open indices)",
+                  design.list == 1 ? "FER (union over open indices)" : "FER (estimate)",
                   "set logscale y\nset format y '10^{%L}'\n"
                   "set yrange [1e-9:1.5]\n",
                   {}};
@@ -153,8 +173,11 @@ std::vector<Diagram> picture_of_drift(const Design& design, double qber) {
   Series curve{"this design", "linespoints pt 7 ps 0.5 lc rgb '#1f6f9f'", {}};
   for (int k = 0; k < kCurvePoints; ++k) {
     const double p = low + (high - low) * k / (kCurvePoints - 1);
-    const Prediction predicted =
-        predict(design.code.frozen, judge(design.code.block_length(), p, design.arithmetic));
+    const Prediction predicted = predict_at(design, p);
+    if (!predicted.fer) {
+      throw InputError("--plot: the FER of list size " + std::to_string(design.list) + " in " +
+                       to_string(design.arithmetic) + " is not known");
+    }
     if (*predicted.fer > 1e-9) curve.points.emplace_back(p, *predicted.fer);
   }
   if (curve.points.empty()) curve.points.emplace_back(high, 1e-9);
@@ -174,10 +197,16 @@ struct Drift {
 
 Drift drift_to(const Design& design, double qber) {
   require_error_rate(qber, "--qber");
-  const BlockLength block_length = design.code.block_length();
-  const double entropy = static_cast<double>(block_length.bits()) * binary_entropy(qber);
-  return {qber, predict(design.code.frozen, judge(block_length, qber, design.arithmetic)),
+  const double entropy =
+      static_cast<double>(design.code.block_length().bits()) * binary_entropy(qber);
+  return {qber, predict_at(design, qber),
           static_cast<double>(design.code.leakage_bits()) / entropy};
+}
+
+// Open indices at which a list decoder of planes lets every path follow the sign.
+std::optional<std::size_t> never_forking(const Design& design) {
+  if (design.list == 1 || design.arithmetic.kind != Arithmetic::Kind::planes) return std::nullopt;
+  return metric_weights(design.code.frozen, design.qber, design.arithmetic).never_forks.count();
 }
 
 }  // namespace
@@ -193,6 +222,12 @@ int run_inspect(const std::vector<std::string>& arguments) {
   Json root = design_summary(design);
   std::string account =
       options.text("FILE") + " is whole: counts and digests fit.\n" + describe(design);
+  if (const auto indices = never_forking(design)) {
+    root["never_forks"] = *indices;
+    const std::size_t open = design.code.block_length().bits() - design.code.frozen.frozen_count();
+    account += "A list decoder need not fork at " + grouped(*indices) + " of the " + grouped(open) +
+               " open indices; it does at the other " + grouped(open - *indices) + ".\n";
+  }
   if (options.has("qber")) {
     const Drift drift = drift_to(design, options.number("qber"));
     root["at_qber"] = {{"qber", drift.qber},

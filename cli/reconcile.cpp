@@ -3,6 +3,7 @@
 
 #include "cli/account.h"
 #include "cli/command.h"
+#include "cli/decoder_plan.h"
 #include "cli/design_file.h"
 #include "cli/exchange_options.h"
 #include "cli/options.h"
@@ -28,6 +29,7 @@ Options make_options() {
       .value("rest", "FILE", "the last bits, that fill no block")
       .value("phase-error", "E", "phase error rate for the net key (the observed QBER)")
       .flag("strict", "exit status 1 when a block failed");
+  add_list_option(options);
   add_key_options(options);
   add_test_seed(options);
   options.computing().epilogue(
@@ -100,15 +102,15 @@ std::optional<double> phase_error(const Options& options) {
   return value;
 }
 
-void print_account(std::ostream& out, const Design& design, const ReconcileSummary& summary,
-                   const RunFigures& figures, double seconds) {
+void print_account(std::ostream& out, const Design& design, const DecoderPlan& plan,
+                   const ReconcileSummary& summary, const RunFigures& figures, double seconds) {
   const std::uint64_t bits = summary.blocks * figures.block_length;
   out << grouped(summary.accepted) << " of " << counted(summary.blocks, "block")
       << " accepted; provisional until the verdict comes.\n";
   if (summary.receipt.test_only) out << kTestOnlySentence;
   out << failure_diagnosis(design, summary);
   Table table;
-  table
+  table.row("decoder", describe_decoder(plan, design.arithmetic))
       .row("blocks", grouped(summary.blocks) + " of " + grouped(figures.block_length) +
                          " bits, rest " + counted(summary.rest_bits, "bit"))
       .row("failed", grouped(summary.failed()) + ", FER " + fixed(figures.fer, 4) +
@@ -145,7 +147,8 @@ int run_reconcile(const std::vector<std::string>& arguments) {
   ReconcileOptions reconcile_options;
   reconcile_options.group_bits = options.optional_whole("group");
   reconcile_options.test_seed = options.optional_whole("test-only-seed");
-  const auto decoder = make_batch_decoder(design);
+  const DecoderPlan plan = decoder_plan(options, design);
+  const auto decoder = make_batch_decoder(design, plan);
 
   // Before the outputs, so that no signal leaves their temporary files behind.
   RunState state("reconcile", static_cast<double>(design.code.block_length().bits()),
@@ -161,6 +164,7 @@ int run_reconcile(const std::vector<std::string>& arguments) {
   const RunFigures figures = run_figures(design, summary.blocks, summary.accepted, summary.ledger,
                                          observed_qber(design, summary), phase);
   Json report_json = receiver_report(design, summary, figures);
+  report_json["decoder"] = decoder_json(plan, design.arithmetic);
   if (report) report->write(report_json.dump(1) + "\n");
   receipt.write(receipt_to_json(summary.receipt));
   // The receipt is what the sender acts on: it is put in place last.
@@ -176,7 +180,7 @@ int run_reconcile(const std::vector<std::string>& arguments) {
     report_json["seconds"] = seconds;
     std::cout << report_json.dump(2) << '\n';
   } else if (!options.quiet()) {
-    print_account(options.account(), design, summary, figures, seconds);
+    print_account(options.account(), design, plan, summary, figures, seconds);
   }
   const bool as_asked = summary.accepted > 0 && figures.net_key.plain > 0 &&
                         !(options.has("strict") && summary.failed() > 0);

@@ -3,6 +3,7 @@
 
 #include "cli/account.h"
 #include "cli/command.h"
+#include "cli/decoder_plan.h"
 #include "cli/design_file.h"
 #include "cli/options.h"
 #include "cli/run_state.h"
@@ -23,14 +24,17 @@ Options make_options() {
                   {"FILE"});
   options.value("qber", "P", "error rate of the channel (the design's QBER)")
       .value("channel", "CHANNEL", "bsc:P, the long form of --qber")
-      .value("arithmetic", "A", "exact, planes:W or integer:Q:A (the design's)")
-      .value("blocks", "B", "stop at so many blocks (1000000; with it no stop at failures)")
+      .value("arithmetic", "A", "exact, planes:W or integer:Q:A (the design's)");
+  add_list_option(options);
+  options.value("blocks", "B", "stop at so many blocks (1000000; with it no stop at failures)")
       .value("failures", "E", "stop at so many failures (100)")
       .value("seed", "S", "the same seed gives the same counts (1)")
       .computing()
       .epilogue(
           "Example: is the predicted FER what the decoder does?\n"
-          "  frostline trial fibre.design.json --blocks 100000\n");
+          "  frostline trial fibre.design.json --blocks 100000\n"
+          "With a small list first and a large one for what it leaves:\n"
+          "  frostline trial fibre.design.json --list 8,32\n");
   return options;
 }
 
@@ -68,11 +72,13 @@ struct Expectation {
   std::optional<double> limit_efficiency;  // at the upper end of the FER interval
 };
 
-Expectation expect(const Design& design, double p, const TrialSummary& summary) {
+Expectation expect(const Design& design, double p, unsigned list, const TrialSummary& summary) {
   const std::uint64_t length = design.code.block_length().bits();
   const double entropy = static_cast<double>(length) * binary_entropy(p);
   Expectation expectation{
-      p, predict(design.code.frozen, judge(design.code.block_length(), p, design.arithmetic)),
+      p,
+      predict(design.code.frozen, judge(design.code.block_length(), p, design.arithmetic),
+              list_setting(design, p, list)),
       static_cast<double>(design.code.leakage_bits()) / entropy,
       static_cast<double>(design.code.frozen.frozen_count()) / entropy, std::nullopt};
   const double high = summary.fer_interval.high;
@@ -82,11 +88,14 @@ Expectation expect(const Design& design, double p, const TrialSummary& summary) 
   return expectation;
 }
 
-Json trial_json(const Design& design, const TrialSummary& summary, const Expectation& expectation) {
+Json trial_json(const Design& design, const DecoderPlan& plan, const TrialSummary& summary,
+                const Expectation& expectation) {
   Json root;
   root["block_length"] = design.code.block_length().bits();
   root["frozen_count"] = design.code.frozen.frozen_count();
   root["arithmetic"] = to_string(design.arithmetic);
+  root["lists"] = plan.lists;
+  root["precoding"] = precoding_name(design.code.precoding);
   root["qber"] = expectation.qber;
   root["blocks"] = summary.blocks;
   root["failures"] = summary.failures;
@@ -107,13 +116,14 @@ Json trial_json(const Design& design, const TrialSummary& summary, const Expecta
   return root;
 }
 
-void print_account(const Design& design, const TrialSummary& summary,
+void print_account(const Design& design, const DecoderPlan& plan, const TrialSummary& summary,
                    const Expectation& expectation) {
   std::cout << counted(summary.failures, "block") << " of " << grouped(summary.blocks) << " failed"
             << (summary.interrupted ? "; interrupted" : "") << ".\n";
   Table table;
   table
-      .row("decoder", "list size 1, " + to_string(design.arithmetic) + ", QBER " +
+      .row("decoder", describe_decoder(plan, design.arithmetic) + ", precoding " +
+                          std::string(precoding_name(design.code.precoding)) + ", QBER " +
                           short_number(expectation.qber))
       .row("FER", short_number(summary.fer()) + " (" + short_number(summary.fer_interval.low) +
                       " to " + short_number(summary.fer_interval.high) + " at 95 %)")
@@ -141,16 +151,17 @@ int run_trial(const std::vector<std::string>& arguments) {
   Design design = read_design(options.text("FILE"));
   if (options.has("arithmetic")) design.arithmetic = parse_arithmetic(options.text("arithmetic"));
   const double p = channel_qber(options, design);
-  const auto decoder = make_batch_decoder(design);
+  const DecoderPlan plan = decoder_plan(options, design);
+  const auto decoder = make_batch_decoder(design, plan);
   RunState state("trial", static_cast<double>(design.code.block_length().bits()), options.quiet());
   const TrialSummary summary =
       frostline::run_trial(design.code, *decoder, p, trial_options(options), state.control());
   if (summary.blocks == 0) throw Interrupted();
-  const Expectation expectation = expect(design, p, summary);
+  const Expectation expectation = expect(design, p, plan.lists.back(), summary);
   if (options.json()) {
-    std::cout << trial_json(design, summary, expectation).dump(2) << '\n';
+    std::cout << trial_json(design, plan, summary, expectation).dump(2) << '\n';
   } else if (!options.quiet()) {
-    print_account(design, summary, expectation);
+    print_account(design, plan, summary, expectation);
   }
   return summary.interrupted ? kInterrupted : kDone;
 }

@@ -64,12 +64,14 @@ std::size_t frozen_for_efficiency(const Ranking& ranking, double efficiency, uns
   return static_cast<std::size_t>(std::floor(bits)) - check_bits;
 }
 
-std::size_t choose_frozen_count(const Ranking& ranking, const Goal& goal, unsigned check_bits,
+// failures: FER for every frozen count, a union or an estimate.
+std::size_t choose_frozen_count(const Ranking& ranking, const std::vector<double>& failures,
+                                const Goal& goal, unsigned check_bits,
                                 std::optional<double>& net_key_rate) {
   switch (goal.kind) {
     case Goal::Kind::fer:
       require_probability(goal.value, "FER");
-      return smallest_frozen_count(ranking.sums, goal.value);
+      return smallest_frozen_count(failures, goal.value);
     case Goal::Kind::frozen:
       if (goal.frozen_count > ranking.block_length.bits()) {
         throw InputError("frozen count " + std::to_string(goal.frozen_count) +
@@ -83,7 +85,7 @@ std::size_t choose_frozen_count(const Ranking& ranking, const Goal& goal, unsign
       if (!(goal.value >= 0 && goal.value <= 0.5)) {
         throw InputError("phase error " + number_text(goal.value) + " is not from 0 to 0.5");
       }
-      const BestKey best = best_key(ranking.sums, goal.value, check_bits);
+      const BestKey best = best_key(failures, goal.value, check_bits);
       net_key_rate = best.net_key_rate;
       return best.frozen_count;
     }
@@ -102,6 +104,22 @@ double union_over_open(const FrozenSet& frozen, const Reliability& reliability) 
   double sum = 0;
   for (const double log_probability : open) sum += std::exp(log_probability);
   return sum;
+}
+
+Prediction list_prediction(std::optional<double> fer) {
+  Prediction predicted;
+  predicted.kind = fer ? "estimate" : "order-only";
+  predicted.fer = fer;
+  return predicted;
+}
+
+// Throws InputError where the goal asks for a FER that nobody can tell.
+void require_estimate(const Goal& goal, const Arithmetic& arithmetic, unsigned list) {
+  if (has_list_estimate(arithmetic, list)) return;
+  if (goal.kind == Goal::Kind::frozen || goal.kind == Goal::Kind::efficiency) return;
+  throw InputError("the FER of list size " + std::to_string(list) + " in " + to_string(arithmetic) +
+                   " is not known: its path metric has no weights. Choose the frozen count or the "
+                   "efficiency yourself");
 }
 
 Prediction prediction_of(double sum, std::optional<double> lower, ReliabilityKind kind) {
@@ -158,14 +176,22 @@ Ranking rank_by(BlockLength block_length, double qber, Judgement own, double ord
 
 Designed make_design(const Ranking& ranking, const Goal& goal, const CodeOptions& code,
                      Parameters options) {
+  require_estimate(goal, ranking.arithmetic, code.list);
+  const bool estimated = code.list > 1 && has_list_estimate(ranking.arithmetic, code.list);
+  std::vector<double> estimates;
+  if (estimated) {
+    estimates = list_fer_estimates(
+        {ranking.block_length, ranking.qber, code.list, code.precoding, ranking.arithmetic},
+        ranking.sums);
+  }
   std::optional<double> net_key_rate;
-  const std::size_t frozen_count =
-      choose_frozen_count(ranking, goal, code.check_bits, net_key_rate);
+  const std::size_t frozen_count = choose_frozen_count(
+      ranking, estimated ? estimates : ranking.sums, goal, code.check_bits, net_key_rate);
   Design design{
       {freeze_first(ranking.order, frozen_count), code.precoding, code.check_bits},
       ranking.qber,
       recorded_with_judge(ranking.construction, ranking.order_alpha, ranking.judged.by.name),
-      1,
+      code.list,
       ranking.arithmetic,
       {},
       {},
@@ -175,6 +201,11 @@ Designed make_design(const Ranking& ranking, const Goal& goal, const CodeOptions
     // What the order would freeze next is what is most likely to fail.
     design.reveal_order.emplace(ranking.order.begin() + static_cast<std::ptrdiff_t>(frozen_count),
                                 ranking.order.end());
+  }
+  if (code.list > 1) {
+    design.predicted =
+        list_prediction(estimated ? std::optional<double>(estimates[frozen_count]) : std::nullopt);
+    return {std::move(design), net_key_rate};
   }
   std::optional<double> lower;
   if (!ranking.lower_sums.empty()) lower = ranking.lower_sums[frozen_count];
@@ -187,15 +218,16 @@ Design design_from_mask(const FrozenSet& mask, double qber, const Arithmetic& ar
                         const CodeOptions& code, Parameters options) {
   require_error_rate(qber, "QBER");
   const Judgement judgement = judge(mask.block_length(), qber, arithmetic);
-  Design design{{mask, code.precoding, code.check_bits},
-                qber,
-                {"user-mask", {{"judged_by", judgement.by.name}}},
-                1,
-                arithmetic,
-                {},
-                predict(mask, judgement),
-                std::move(options),
-                {}};
+  Design design{
+      {mask, code.precoding, code.check_bits},
+      qber,
+      {"user-mask", {{"judged_by", judgement.by.name}}},
+      code.list,
+      arithmetic,
+      {},
+      predict(mask, judgement, {mask.block_length(), qber, code.list, code.precoding, arithmetic}),
+      std::move(options),
+      {}};
   if (code.reveal_order) {
     std::vector<std::uint32_t> open;
     for (const std::uint32_t index : freezing_order(judgement.reliability)) {
@@ -210,11 +242,26 @@ Judgement judge(BlockLength block_length, double qber, const Arithmetic& arithme
   return judge_by(default_construction(arithmetic), block_length, qber, arithmetic);
 }
 
-Prediction predict(const FrozenSet& frozen, const Judgement& judgement) {
-  std::optional<double> lower;
-  if (judgement.lower) lower = union_over_open(frozen, *judgement.lower);
-  return prediction_of(union_over_open(frozen, judgement.reliability), lower,
-                       judgement.reliability.kind);
+Prediction predict(const FrozenSet& frozen, const Judgement& judgement,
+                   const ListSetting& setting) {
+  const double sum = union_over_open(frozen, judgement.reliability);
+  if (setting.list == 1) {
+    std::optional<double> lower;
+    if (judgement.lower) lower = union_over_open(frozen, *judgement.lower);
+    return prediction_of(sum, lower, judgement.reliability.kind);
+  }
+  if (!has_list_estimate(setting.arithmetic, setting.list)) return list_prediction(std::nullopt);
+  const std::vector<double> sums =
+      union_sums(judgement.reliability, freezing_order(judgement.reliability));
+  // The two sums of one set differ in the order of summation.
+  const auto same = std::partition_point(sums.begin(), sums.end() - 1,
+                                         [&](double other) { return other > sum * (1 + 1e-9); });
+  return list_prediction(
+      list_fer_estimates(setting, sums)[static_cast<std::size_t>(same - sums.begin())]);
+}
+
+ListSetting list_setting(const Design& design, double qber, unsigned list) {
+  return {design.code.block_length(), qber, list, design.code.precoding, design.arithmetic};
 }
 
 }  // namespace frostline

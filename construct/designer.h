@@ -8,6 +8,7 @@
 #include <optional>
 #include <vector>
 
+#include "construct/list_estimate.h"
 #include "polar/arithmetic.h"
 #include "polar/design.h"
 #include "polar/reliability.h"
@@ -65,6 +66,7 @@ struct CodeOptions {
   unsigned check_bits = 0;
   Precoding precoding = Precoding::none;
   bool reveal_order = false;  // list the open indices, most likely to fail first
+  unsigned list = 1;          // L of the decoder, a power of two from 1 to 128
 };
 
 struct Designed {
@@ -72,7 +74,9 @@ struct Designed {
   std::optional<double> net_key_rate;  // of Kind::best_key; not positive means no key
 };
 
-// options: what was asked, for the provenance. Throws InputError when the goal is out of range.
+// options: what was asked, for the provenance. With a list the FER is an estimate
+// (construct/list_estimate.h). Throws InputError when the goal is out of range, or needs an
+// estimate that there is not.
 Designed make_design(const Ranking& ranking, const Goal& goal, const CodeOptions& code,
                      Parameters options);
 
@@ -83,7 +87,11 @@ Design design_from_mask(const FrozenSet& mask, double qber, const Arithmetic& ar
 // The most trusted judgement of any frozen set of that length in that arithmetic at another QBER.
 Judgement judge(BlockLength block_length, double qber, const Arithmetic& arithmetic);
 
-// Union over the open indices: min(1, sum), kind, and the interval where both bounds are known.
-Prediction predict(const FrozenSet& frozen, const Judgement& judgement);
+// With L = 1 the union over the open indices: min(1, sum), kind, and the interval where both bounds
+// are known. With a list an estimate: that of the set with the same union which the judgement's own
+// order freezes; none where there is no estimate. The judgement is one at setting.qber.
+Prediction predict(const FrozenSet& frozen, const Judgement& judgement, const ListSetting& setting);
+// The setting of a design's code and arithmetic at a QBER, decoded with a list size.
+ListSetting list_setting(const Design& design, double qber, unsigned list);
 
 }  // namespace frostline

@@ -12,6 +12,20 @@
 namespace frostline {
 namespace {
 
+std::unique_ptr<BatchDecoder> make_pass(const Design& design, unsigned list,
+                                        const std::shared_ptr<const MetricWeights>& weights) {
+  if (list > 1) {
+    return std::make_unique<ReferenceListBatchDecoder>(design.code, design.arithmetic, design.qber,
+                                                       list, weights);
+  }
+  if (LaneDecoder::serves(design.code, design.arithmetic)) {
+    return std::make_unique<LaneDecoder>(design.code, design.arithmetic);
+  }
+  return std::make_unique<ReferenceBatchDecoder>(design.code, design.arithmetic, design.qber);
+}
+
+}  // namespace
+
 void require_lists(const std::vector<unsigned>& lists) {
   if (lists.empty()) throw std::invalid_argument("a decoder without passes");
   unsigned last = 0;
@@ -27,20 +41,6 @@ void require_lists(const std::vector<unsigned>& lists) {
     last = list;
   }
 }
-
-std::unique_ptr<BatchDecoder> make_pass(const Design& design, unsigned list,
-                                        const std::shared_ptr<const MetricWeights>& weights) {
-  if (list > 1) {
-    return std::make_unique<ReferenceListBatchDecoder>(design.code, design.arithmetic, design.qber,
-                                                       list, weights);
-  }
-  if (LaneDecoder::serves(design.code, design.arithmetic)) {
-    return std::make_unique<LaneDecoder>(design.code, design.arithmetic);
-  }
-  return std::make_unique<ReferenceBatchDecoder>(design.code, design.arithmetic, design.qber);
-}
-
-}  // namespace
 
 std::unique_ptr<BatchDecoder> make_batch_decoder(const Design& design) {
   return make_batch_decoder(design, {{design.list}, nullptr});

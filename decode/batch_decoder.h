@@ -47,6 +47,10 @@ struct DecoderPlan {
   std::shared_ptr<const MetricWeights> weights;
 };
 
+// Throws InputError unless all list sizes are powers of two from 1 to 128, each above the one
+// before; std::invalid_argument when there is none.
+void require_lists(const std::vector<unsigned>& lists);
+
 // Throws InputError when there is no such decoder, or a list size is not a power of two from 1 to
 // 128 or not above the one before; std::invalid_argument when a list of more than one path lacks
 // the weights.
