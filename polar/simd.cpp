@@ -18,8 +18,7 @@ struct NamedTarget {
 // Best first, as Highway numbers its targets.
 constexpr NamedTarget kTargets[] = {
 #if HWY_ARCH_X86
-    {HWY_AVX3_DL, "avx512"}, {HWY_AVX3, "avx512"},   {HWY_AVX2, "avx2"},
-    {HWY_SSE4, "sse4"},      {HWY_SSSE3, "ssse3"},
+    {HWY_AVX3_DL, "avx512"}, {HWY_AVX3, "avx512"},   {HWY_AVX2, "avx2"}, {HWY_SSE4, "sse4"},
 #elif HWY_ARCH_ARM
     {HWY_NEON, "neon"},
 #endif

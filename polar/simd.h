@@ -8,7 +8,7 @@
 namespace frostline {
 
 // The sets that this build has code for and this machine runs, best first: names among avx512,
-// avx2, sse4, ssse3, neon, scalar.
+// avx2, sse4, neon, scalar.
 std::vector<std::string> simd_names();
 // The set in use.
 std::string simd_in_use();

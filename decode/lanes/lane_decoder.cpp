@@ -8,8 +8,19 @@
 #include <algorithm>
 
 #include "decode/lanes/lane_decoder.h"
-#include "decode/lanes/plane_rules-inl.h"
+
+#include "decode/lanes/register_tree-inl.h"
 #include "polar/transform.h"
+
+// Memory of a level: each starts 512 bytes before the one above it, modulo the 4096 bytes within
+// which processors tell loads from earlier stores. So what a loop over a node stores never looks
+// like what it is about to load.
+#ifndef FROSTLINE_ALIGNED_PLANES
+#define FROSTLINE_ALIGNED_PLANES
+namespace frostline {
+constexpr std::size_t AlignedPlanes(std::size_t words) { return (words + 511) / 512 * 512 + 448; }
+}  // namespace frostline
+#endif
 
 HWY_BEFORE_NAMESPACE();
 namespace frostline {
@@ -19,105 +30,163 @@ constexpr std::uint64_t kLowerBits[6] = {0x5555555555555555U, 0x3333333333333333
                                          0x0F0F0F0F0F0F0F0FU, 0x00FF00FF00FF00FFU,
                                          0x0000FFFF0000FFFFU, 0x00000000FFFFFFFFU};
 
-// Words between planes. Their lengths are powers of two, and without it all of them would fall into
-// the same few sets of the first-level cache.
-constexpr std::size_t kPlanePadding = 40;
+using FullTag = hn::FixedTag<std::uint64_t, kVectorBits / 64>;
+using FullVector = hn::Vec<FullTag>;
+constexpr std::size_t kStep = kVectorBits / 64;
 
-HWY_INLINE std::uint64_t LowMask(std::size_t bits) {
-  return bits >= 64 ? ~std::uint64_t{0} : (std::uint64_t{1} << bits) - 1;
+// Planes that a shape stores.
+constexpr std::size_t StoredPlanes(Shape shape) {
+  return static_cast<std::size_t>(MagnitudePlanes(shape)) + (HasSign(shape) ? 1 : 0);
 }
 
-// Planes of the node at hand on one level; the next node on that level takes their place.
-struct LevelPlanes {
-  std::uint64_t* s = nullptr;
-  std::uint64_t* m[3] = {nullptr, nullptr, nullptr};
-};
-
-// Calls each(tag, first word) until all words are done, with the widest vectors that fit.
-// REQUIRES: words a power of two.
-template <typename Each>
-HWY_INLINE void OverWords(std::size_t words, Each&& each) {
-  const hn::ScalableTag<std::uint64_t> full;
-  const std::size_t lanes = hn::Lanes(full);
-  if (words >= lanes) {
-    for (std::size_t i = 0; i < words; i += lanes) each(full, i);
-    return;
+// The messages of a node lie vector after vector, the planes of a vector next to each other: a node
+// is one stream of memory, whatever the number of its planes. Those of shape fresh are not stored
+// at all: they are the inverse of the partial sums of the left neighbour.
+template <Shape kShape>
+HWY_INLINE Message<FullVector> LoadMessage(const std::uint64_t* messages, std::size_t vector) {
+  const FullTag d;
+  Message<FullVector> message;
+  if constexpr (kShape == Shape::fresh) {
+    message.m[0] = hn::Not(hn::Load(d, messages + vector * kStep));
+    return message;
   }
-#if HWY_MAX_BYTES >= 64
-  if (words == 4) {
-    each(hn::FixedTag<std::uint64_t, 4>(), std::size_t{0});
-    return;
-  }
-#endif
-#if HWY_MAX_BYTES >= 32
-  if (words == 2) {
-    each(hn::FixedTag<std::uint64_t, 2>(), std::size_t{0});
-    return;
-  }
-#endif
-  for (std::size_t i = 0; i < words; ++i) each(hn::FixedTag<std::uint64_t, 1>(), i);
-}
-
-template <Shape kShape, typename D>
-HWY_INLINE Message<hn::Vec<D>> LoadMessage(D d, const LevelPlanes& planes, std::size_t i) {
-  Message<hn::Vec<D>> message;
-  if constexpr (HasSign(kShape)) message.s = hn::Load(d, planes.s + i);
-  for (int k = 0; k < MagnitudePlanes(kShape); ++k) {
-    message.m[k] = hn::Load(d, planes.m[k] + i);
-  }
+  const std::uint64_t* at = messages + vector * (StoredPlanes(kShape) * kStep);
+  for (int k = 0; k < MagnitudePlanes(kShape); ++k, at += kStep) message.m[k] = hn::Load(d, at);
+  if constexpr (HasSign(kShape)) message.s = hn::Load(d, at);
   return message;
 }
 
-template <Shape kShape, typename D>
-HWY_INLINE void StoreMessage(D d, const Message<hn::Vec<D>>& message, const LevelPlanes& planes,
-                             std::size_t i) {
-  if constexpr (HasSign(kShape)) hn::Store(message.s, d, planes.s + i);
-  for (int k = 0; k < MagnitudePlanes(kShape); ++k) hn::Store(message.m[k], d, planes.m[k] + i);
+template <Shape kShape>
+HWY_INLINE void StoreMessage(const Message<FullVector>& message, std::uint64_t* messages,
+                             std::size_t vector) {
+  const FullTag d;
+  std::uint64_t* at = messages + vector * (StoredPlanes(kShape) * kStep);
+  for (int k = 0; k < MagnitudePlanes(kShape); ++k, at += kStep) hn::Store(message.m[k], d, at);
+  if constexpr (HasSign(kShape)) hn::Store(message.s, d, at);
+}
+
+// The same for all vectors of a node that goes on in registers.
+template <Shape kShape, unsigned k>
+HWY_INLINE Message<Bits<k>> LoadNode(const std::uint64_t* messages) {
+  Message<Bits<k>> out;
+  for (unsigned i = 0; i < kParts<k>; ++i) {
+    const Message<FullVector> part = LoadMessage<kShape>(messages, i);
+    if constexpr (HasSign(kShape)) out.s.part[i] = part.s;
+    for (int plane = 0; plane < MagnitudePlanes(kShape); ++plane) {
+      out.m[plane].part[i] = part.m[plane];
+    }
+  }
+  return out;
+}
+
+// Decodes a node in registers: its messages, its difference bits, which become its result, and
+// where the next code of the program is read.
+using RegisterNode = void (*)(const std::uint64_t* messages, std::uint64_t* x,
+                              const std::uint8_t** next);
+
+template <int kW, unsigned kLog2Lanes, Shape kShape, unsigned kLevel>
+void DecodeInRegisters(const std::uint64_t* messages, std::uint64_t* x, const std::uint8_t** next) {
+  using Tree = RegisterTree<kW, kLog2Lanes>;
+  constexpr unsigned kBits = 1U << (kLevel + kLog2Lanes);
+  Message<Bits<kBits>> message;
+  if constexpr (kShape != Shape::constant) message = LoadNode<kShape, kBits>(messages);
+  StoreBits(Tree::template Call<kShape, kLevel>(message, LoadBits<kBits>(x), next), x);
+}
+
+// What the walk needs to know of a number of lanes.
+struct RegisterNodes {
+  // Nodes of this level are decoded in registers.
+  unsigned level;
+  // By shape.
+  RegisterNode decode[5];
+  // Roots of smaller codes, by level.
+  RegisterNode root[kRegisterLog2Bits + 1];
+};
+
+template <int kW, unsigned kLog2Lanes, unsigned kLevel>
+void FillRoots(RegisterNodes& nodes) {
+  if constexpr (kLevel >= kLeafLog2) {
+    nodes.root[kLevel] = DecodeInRegisters<kW, kLog2Lanes, Shape::constant, kLevel>;
+    FillRoots<kW, kLog2Lanes, kLevel - 1>(nodes);
+  }
+}
+
+template <int kW, unsigned kLog2Lanes = 0>
+RegisterNodes NodesOfLanes(unsigned log2_lanes) {
+  if constexpr (kLog2Lanes < 9) {
+    if (log2_lanes > kLog2Lanes) return NodesOfLanes<kW, kLog2Lanes + 1>(log2_lanes);
+  }
+  constexpr unsigned kLevel =
+      kLog2Lanes + kLeafLog2 < kRegisterLog2Bits ? kRegisterLog2Bits - kLog2Lanes : kLeafLog2;
+  RegisterNodes nodes{kLevel,
+                      {DecodeInRegisters<kW, kLog2Lanes, Shape::constant, kLevel>,
+                       DecodeInRegisters<kW, kLog2Lanes, Shape::fresh, kLevel>,
+                       DecodeInRegisters<kW, kLog2Lanes, Shape::one, kLevel>,
+                       DecodeInRegisters<kW, kLog2Lanes, Shape::two, kLevel>,
+                       DecodeInRegisters<kW, kLog2Lanes, kFullShape<kW>, kLevel>},
+                      {}};
+  FillRoots<kW, kLog2Lanes, kLevel>(nodes);
+  return nodes;
 }
 
 // One batch on its way through the tree.
+//
+// Memory, not logic, limits the loops, so that each does as much as it can with what it has loaded:
+// what makes a node's messages (f or g of its parent) makes those of its left child too, where that
+// one needs them; and a node leaves its last step, left half += right half, to whoever reads its
+// result next. All loops go over pairs, an element of the first half and the same one of the
+// second.
 template <int kW>
 class Walk {
  public:
-  // x: the difference rows, which become the error rows. scratch: aligned like a vector, at least
-  // 4 planes of every level below the root.
+  // x: the difference rows, which become the error rows. scratch: room for LaneDecoder's
+  // scratch_words.
   Walk(const LaneProgram& program, unsigned log2_lanes, std::uint64_t* scratch, std::uint64_t* x)
-      : kinds_(program.kinds.data()), log2_lanes_(log2_lanes), x_(x) {
-    // Planes of the longer levels first, so that each lies at a multiple of its own size.
-    const unsigned n = program.block_length.log2();
-    for (unsigned level = n; level-- > 0;) {
-      const std::size_t words = WordsAt(level);
-      const auto take = [&scratch, words] {
-        std::uint64_t* const plane = scratch;
-        scratch += words >= kPlanePadding ? words + kPlanePadding : words;
-        return plane;
-      };
-      levels_[level].m[0] = take();
-      // The first level below the root holds shape one only.
-      if (level + 1 == n) continue;
-      levels_[level].s = take();
-      levels_[level].m[1] = take();
-      levels_[level].m[2] = take();
+      : nodes_(NodesOfLanes<kW>(log2_lanes)),
+        n_(program.block_length.log2()),
+        log2_lanes_(log2_lanes),
+        root_(program.root),
+        next_(program.codes.data()),
+        x_(x) {
+    // The first level below the root holds nothing that is stored, the second none with more than
+    // three planes.
+    for (unsigned level = n_ - 1; level-- > nodes_.level;) {
+      levels_[level] = scratch;
+      scratch += AlignedPlanes((level + 2 == n_ ? 3 : 4) * WordsAt(level));
     }
   }
 
-  void Root(unsigned n) {
-    if (kinds_[1] == NodeKind::all_frozen) {
-      TransformAt(0, n);
-    } else if (kinds_[1] == NodeKind::all_open) {
-      std::fill_n(x_, WordsAt(n), 0);
-    } else if (BitsAt(n) <= 64) {
-      x_[0] = DecodeWord<Shape::constant>({}, 1, n, x_[0] & LowMask(BitsAt(n))).bits;
-    } else {
-      Decode<Shape::constant>(1, n, 0);
+  void Root() {
+    if (root_ == NodeKind::all_open) {
+      std::fill_n(x_, WordsAt(n_), 0);
+    } else if (root_ == NodeKind::all_frozen) {
+      TransformAt(0, n_);
+    } else if (n_ <= nodes_.level) {
+      nodes_.root[n_](nullptr, x_, &next_);
+    } else if (Node<Shape::constant>(n_, 0, nullptr, false)) {
+      const std::size_t half = VectorsAt(n_ - 1);
+      for (std::size_t i = 0; i < half; ++i) AddRight(x_, i, half);
     }
   }
 
  private:
-  std::size_t BitsAt(unsigned level) const { return std::size_t{1} << (level + log2_lanes_); }
-  std::size_t WordsAt(unsigned level) const { return words_for(BitsAt(level)); }
+  std::size_t WordsAt(unsigned level) const {
+    return words_for(std::size_t{1} << (level + log2_lanes_));
+  }
+  std::size_t VectorsAt(unsigned level) const { return WordsAt(level) / kStep; }
 
-  // In place: from frozen values to partial sums of an all-frozen node of at least 64 bits.
+  static HWY_INLINE FullVector LoadX(const std::uint64_t* x, std::size_t vector) {
+    return hn::Load(FullTag(), x + vector * kStep);
+  }
+  static HWY_INLINE void StoreX(FullVector bits, std::uint64_t* x, std::size_t vector) {
+    hn::Store(bits, FullTag(), x + vector * kStep);
+  }
+  // x[i] += x[i + half].
+  static HWY_INLINE void AddRight(std::uint64_t* x, std::size_t i, std::size_t half) {
+    StoreX(hn::Xor(LoadX(x, i), LoadX(x, half + i)), x, i);
+  }
+
+  // In place: from frozen values to partial sums of an all-frozen node.
   void TransformAt(std::size_t first, unsigned level) const {
     const std::size_t words = WordsAt(level);
     std::uint64_t* x = x_ + first;
@@ -137,158 +206,197 @@ class Walk {
     }
   }
 
-  // A mixed node of more than 64 bits whose messages lie in levels_[level], and whose result goes
-  // to x_ from word first on.
-  template <Shape kShape>
-  void Decode(std::size_t node, unsigned level, std::size_t first) {
-    const std::size_t half = WordsAt(level - 1);
-    DecodeLeft<kShape>(node, level, first, half);
-    DecodeRight<kShape>(node, level, first, half);
+  // Whether the mixed node of this level that comes next needs the messages of its left child, to
+  // be stored by whoever makes its own.
+  bool next_wants_left(unsigned level) const {
+    return level > nodes_.level && left_kind(*next_) == NodeKind::mixed;
   }
 
-  // x_left += x_right.
-  void Combine(std::size_t first, std::size_t half) const {
-    std::uint64_t* x = x_ + first;
-    OverWords(half, [x, half](auto d, std::size_t i) HWY_ATTR {
-      hn::Store(hn::Xor(hn::Load(d, x + i), hn::Load(d, x + half + i)), d, x + i);
-    });
+  // A mixed node above the levels in registers, with its messages at `from`, and with those of its
+  // left child in levels_[level - 1] where left_ready. Its result goes to x_ from word first on.
+  // Returns whether the left half still lacks the right one.
+  template <Shape kShape>
+  bool Node(unsigned level, std::size_t first, const std::uint64_t* from, bool left_ready) {
+    const std::uint8_t code = *next_++;
+    const bool left_pending = Left<kShape>(left_kind(code), level, first, from, left_ready);
+    std::uint64_t* const x = x_ + first;
+    const std::size_t half = VectorsAt(level - 1);
+    switch (right_kind(code)) {
+      case NodeKind::all_open:
+        if (left_pending) {
+          OpenRight<kShape, true>(from, x, half / 2);
+        } else {
+          OpenRight<kShape, false>(from, x, half / 2);
+        }
+        return false;
+      case NodeKind::all_frozen:
+        if (left_pending) {
+          for (std::size_t i = 0; i < half / 2; ++i) AddRight(x, i, half / 2);
+        }
+        TransformAt(first + half * kStep, level - 1);
+        return true;
+      default:
+        return MixedRight<kShape>(level, first, from, left_pending);
+    }
   }
 
+  // On to a mixed child.
   template <Shape kShape>
-  void DecodeLeft(std::size_t node, unsigned level, std::size_t first, std::size_t half) {
-    const NodeKind kind = kinds_[2 * node];
+  bool Descend(unsigned level, std::size_t first, const std::uint64_t* from, bool left_ready) {
+    if (level > nodes_.level) return Node<kShape>(level, first, from, left_ready);
+    nodes_.decode[static_cast<int>(kShape)](from, x_ + first, &next_);
+    return false;
+  }
+
+  // Decodes the left child. Returns whether its left half still lacks its right one.
+  template <Shape kShape>
+  bool Left(NodeKind kind, unsigned level, std::size_t first, const std::uint64_t* from,
+            bool left_ready) {
+    const std::size_t half = VectorsAt(level - 1);
+    if (kind == NodeKind::mixed) {
+      constexpr Shape kNext = AfterF(kShape);
+      const bool next_ready =
+          kShape != Shape::constant && !left_ready && next_wants_left(level - 1);
+      if constexpr (kShape != Shape::constant) {
+        if (next_ready) {
+          MakeLeft<kShape, true>(level, from, half / 2);
+        } else if (!left_ready) {
+          MakeLeft<kShape, false>(level, from, half / 2);
+        }
+      }
+      return Descend<kNext>(level - 1, first, levels_[level - 1], next_ready);
+    }
     if (kind == NodeKind::all_frozen) {
       TransformAt(first, level - 1);
-      return;
+      return false;
     }
-    const LevelPlanes from = levels_[level];
-    if (kind == NodeKind::all_open) {
-      std::uint64_t* x = x_ + first;
-      if constexpr (HasSign(kShape)) {
-        OverWords(half, [&](auto d, std::size_t i) HWY_ATTR {
-          hn::Store(hn::Xor(hn::Load(d, from.s + i), hn::Load(d, from.s + half + i)), d, x + i);
-        });
-      } else {
-        std::fill_n(x, half, 0);
+    std::uint64_t* const x = x_ + first;
+    if constexpr (HasSign(kShape)) {
+      for (std::size_t i = 0; i < half; ++i) {
+        StoreX(SignOfF(LoadMessage<kShape>(from, i), LoadMessage<kShape>(from, half + i)), x, i);
       }
-      return;
-    }
-    if constexpr (kShape != Shape::constant) {
-      const LevelPlanes to = levels_[level - 1];
-      OverWords(half, [&](auto d, std::size_t i) HWY_ATTR {
-        StoreMessage<kShape>(
-            d, F<kShape>(LoadMessage<kShape>(d, from, i), LoadMessage<kShape>(d, from, half + i)),
-            to, i);
-      });
-    }
-    Descend<kShape>(2 * node, level - 1, first);
-  }
-
-  // Decodes the right child and adds its result to the left one's.
-  template <Shape kShape>
-  void DecodeRight(std::size_t node, unsigned level, std::size_t first, std::size_t half) {
-    const NodeKind kind = kinds_[2 * node + 1];
-    if (kind == NodeKind::all_frozen) {
-      TransformAt(first + half, level - 1);
-      Combine(first, half);
-      return;
-    }
-    const LevelPlanes from = levels_[level];
-    std::uint64_t* const bits = x_ + first;
-    if (kind == NodeKind::all_open) {
-      std::uint64_t* const right = bits + half;
-      if constexpr (kShape == Shape::constant) {
-        std::fill_n(right, half, 0);
-      } else {
-        OverWords(half, [&](auto d, std::size_t i) HWY_ATTR {
-          const auto left = hn::Load(d, bits + i);
-          const auto sign = SignOfG<kShape>(LoadMessage<kShape>(d, from, i),
-                                            LoadMessage<kShape>(d, from, half + i), left);
-          hn::Store(sign, d, right + i);
-          hn::Store(hn::Xor(left, sign), d, bits + i);
-        });
-      }
-      return;
-    }
-    const LevelPlanes to = levels_[level - 1];
-    constexpr Shape kNext = AfterG<kW>(kShape);
-    OverWords(half, [&](auto d, std::size_t i) HWY_ATTR {
-      if constexpr (kShape == Shape::constant) {
-        // Two half units: 1 where the bit agrees, 0 where it does not.
-        hn::Store(hn::Not(hn::Load(d, bits + i)), d, to.m[0] + i);
-      } else {
-        StoreMessage<kNext>(
-            d,
-            G<kShape, kW>(LoadMessage<kShape>(d, from, i), LoadMessage<kShape>(d, from, half + i),
-                          hn::Load(d, bits + i)),
-            to, i);
-      }
-    });
-    Descend<kNext>(2 * node + 1, level - 1, first + half);
-    Combine(first, half);
-  }
-
-  // On to a mixed child, which may fit one word.
-  template <Shape kShape>
-  void Descend(std::size_t node, unsigned level, std::size_t first) {
-    if (BitsAt(level) > 64) {
-      Decode<kShape>(node, level, first);
-      return;
-    }
-    Message<Word> message{};
-    const LevelPlanes& planes = levels_[level];
-    if constexpr (HasSign(kShape)) message.s = {planes.s[0]};
-    for (int k = 0; k < MagnitudePlanes(kShape); ++k) message.m[k] = {planes.m[k][0]};
-    x_[first] = DecodeWord<kShape>(message, node, level, x_[first]).bits;
-  }
-
-  // A node of at most 64 bits, in registers. Message bits beyond the node's mean nothing;
-  // difference and result have zeros there.
-  template <Shape kShape>
-  Word DecodeWord(const Message<Word>& message, std::size_t node, unsigned level,
-                  std::uint64_t difference) const {
-    const NodeKind kind = kinds_[node];
-    if (kind == NodeKind::all_frozen) {
-      for (unsigned k = log2_lanes_; k < log2_lanes_ + level; ++k) {
-        difference ^= (difference >> (1U << k)) & kLowerBits[k];
-      }
-      return {difference};
-    }
-    if (kind == NodeKind::all_open) {
-      if constexpr (HasSign(kShape)) return {message.s.bits & LowMask(BitsAt(level))};
-      return {0};
-    }
-    const auto half = static_cast<unsigned>(BitsAt(level - 1));
-    const Message<Word>& a = message;
-    Message<Word> b = message;
-    b.s.bits >>= half;
-    for (Word& plane : b.m) plane.bits >>= half;
-    Message<Word> child{};
-    if constexpr (kShape != Shape::constant) child = F<kShape>(a, b);
-    const Word left = DecodeWord<kShape>(child, 2 * node, level - 1, difference & LowMask(half));
-    if constexpr (kShape == Shape::constant) {
-      child.m[0] = {~left.bits};
     } else {
-      child = G<kShape, kW>(a, b, left);
+      std::fill_n(x, half * kStep, 0);
     }
-    const Word right =
-        DecodeWord<AfterG<kW>(kShape)>(child, 2 * node + 1, level - 1, difference >> half);
-    return {(left.bits ^ right.bits) | (right.bits << half)};
+    return false;
   }
 
-  const NodeKind* kinds_;
+  // f into levels_[level - 1], and f of that into levels_[level - 2].
+  template <Shape kShape, bool kTwice>
+  void MakeLeft(unsigned level, const std::uint64_t* from, std::size_t quarter) {
+    constexpr Shape kNext = AfterF(kShape);
+    std::uint64_t* const to = levels_[level - 1];
+    std::uint64_t* const then_to = kTwice ? levels_[level - 2] : nullptr;
+    for (std::size_t i = 0; i < quarter; ++i) {
+      const auto low =
+          F<kShape>(LoadMessage<kShape>(from, i), LoadMessage<kShape>(from, 2 * quarter + i));
+      const auto high = F<kShape>(LoadMessage<kShape>(from, quarter + i),
+                                  LoadMessage<kShape>(from, 3 * quarter + i));
+      StoreMessage<kNext>(low, to, i);
+      StoreMessage<kNext>(high, to, quarter + i);
+      if constexpr (kTwice) StoreMessage<kNext>(F<kNext>(low, high), then_to, i);
+    }
+  }
+
+  // g into levels_[level - 1], and f of that into levels_[level - 2]. x: the node's result, of
+  // which the left half is known; kPending: it still lacks its own last step.
+  template <Shape kShape, bool kPending, bool kTwice>
+  void MakeRight(unsigned level, const std::uint64_t* from, std::uint64_t* x, std::size_t quarter) {
+    constexpr Shape kNext = AfterG<kW>(kShape);
+    std::uint64_t* const to = levels_[level - 1];
+    std::uint64_t* const then_to = kTwice ? levels_[level - 2] : nullptr;
+    for (std::size_t i = 0; i < quarter; ++i) {
+      const auto x_high = LoadX(x, quarter + i);
+      auto x_low = LoadX(x, i);
+      if constexpr (kPending) {
+        x_low = hn::Xor(x_low, x_high);
+        StoreX(x_low, x, i);
+      }
+      if constexpr (kShape == Shape::constant) {
+        // The right child's messages are fresh, and only its left child's are stored.
+        if constexpr (kTwice) {
+          StoreX(hn::Not(hn::Or(x_low, x_high)), then_to, i);
+        }
+      } else {
+        const auto low = G<kShape, kW>(LoadMessage<kShape>(from, i),
+                                       LoadMessage<kShape>(from, 2 * quarter + i), x_low);
+        const auto high = G<kShape, kW>(LoadMessage<kShape>(from, quarter + i),
+                                        LoadMessage<kShape>(from, 3 * quarter + i), x_high);
+        StoreMessage<kNext>(low, to, i);
+        StoreMessage<kNext>(high, to, quarter + i);
+        if constexpr (kTwice) StoreMessage<kNext>(F<kNext>(low, high), then_to, i);
+      }
+    }
+  }
+
+  // An all-open right child: its decisions, and the node's last step.
+  template <Shape kShape, bool kPending>
+  void OpenRight(const std::uint64_t* from, std::uint64_t* x, std::size_t quarter) {
+    const std::size_t half = 2 * quarter;
+    for (std::size_t i = 0; i < quarter; ++i) {
+      const auto x_high = LoadX(x, quarter + i);
+      auto x_low = LoadX(x, i);
+      if constexpr (kPending) x_low = hn::Xor(x_low, x_high);
+      auto low = hn::Zero(FullTag());
+      auto high = low;
+      if constexpr (kShape != Shape::constant) {
+        low = SignOfG<kShape>(LoadMessage<kShape>(from, i), LoadMessage<kShape>(from, half + i),
+                              x_low);
+        high = SignOfG<kShape>(LoadMessage<kShape>(from, quarter + i),
+                               LoadMessage<kShape>(from, half + quarter + i), x_high);
+      }
+      StoreX(low, x, half + i);
+      StoreX(high, x, half + quarter + i);
+      StoreX(hn::Xor(x_low, low), x, i);
+      StoreX(hn::Xor(x_high, high), x, quarter + i);
+    }
+  }
+
+  template <Shape kShape>
+  bool MixedRight(unsigned level, std::size_t first, const std::uint64_t* from, bool left_pending) {
+    constexpr Shape kNext = AfterG<kW>(kShape);
+    std::uint64_t* const x = x_ + first;
+    const std::size_t half = VectorsAt(level - 1);
+    const std::size_t quarter = half / 2;
+    const bool next_ready = next_wants_left(level - 1);
+    if (left_pending) {
+      if (next_ready) {
+        MakeRight<kShape, true, true>(level, from, x, quarter);
+      } else {
+        MakeRight<kShape, true, false>(level, from, x, quarter);
+      }
+    } else if (next_ready) {
+      MakeRight<kShape, false, true>(level, from, x, quarter);
+    } else if (kShape != Shape::constant) {
+      MakeRight<kShape, false, false>(level, from, x, quarter);
+    }
+    const std::uint64_t* const messages = kNext == Shape::fresh ? x : levels_[level - 1];
+    if (!Descend<kNext>(level - 1, first + half * kStep, messages, next_ready)) return true;
+    for (std::size_t i = 0; i < quarter; ++i) {
+      const auto high = LoadX(x, half + quarter + i);
+      const auto low = hn::Xor(LoadX(x, half + i), high);
+      StoreX(low, x, half + i);
+      StoreX(hn::Xor(LoadX(x, i), low), x, i);
+      StoreX(hn::Xor(LoadX(x, quarter + i), high), x, quarter + i);
+    }
+    return false;
+  }
+
+  RegisterNodes nodes_;
+  unsigned n_;
   unsigned log2_lanes_;
+  NodeKind root_;
+  const std::uint8_t* next_;
   std::uint64_t* x_;
-  LevelPlanes levels_[BlockLength::kMaxLog2 + 1];
+  std::uint64_t* levels_[BlockLength::kMaxLog2 + 1] = {};
 };
 
 void DecodeBatch(const LaneProgram& program, unsigned planes, unsigned log2_lanes,
                  std::uint64_t* scratch, std::uint64_t* x) {
-  const unsigned n = program.block_length.log2();
   if (planes == 2) {
-    Walk<2>(program, log2_lanes, scratch, x).Root(n);
+    Walk<2>(program, log2_lanes, scratch, x).Root();
   } else {
-    Walk<3>(program, log2_lanes, scratch, x).Root(n);
+    Walk<3>(program, log2_lanes, scratch, x).Root();
   }
 }
 
@@ -326,11 +434,9 @@ void LaneDecoder::decode(const BatchDifference& difference, Span<std::uint64_t> 
   if (difference.rows.size() != words || error_rows.size() != words) {
     throw std::invalid_argument("a batch of another size");
   }
-  // Every level below the root: at most 4 planes of half, a quarter, ... of the batch, and room for
-  // a vector and the padding each.
+  // Every level below the root: at most 4 planes of half, a quarter, ... of the batch.
   KeyWords& scratch = scratch_.local();
-  constexpr std::size_t kRoomWords = 48;
-  scratch.resize(4 * (words + kRoomWords * (program_.block_length.log2() + 1)));
+  scratch.resize(4 * words + AlignedPlanes(1) * (program_.block_length.log2() + 1));
   // Vector loads want alignment, which KeyWords give; other memory goes through a copy.
   KeyWords aligned;
   std::uint64_t* x = error_rows.data();

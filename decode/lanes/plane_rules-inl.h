@@ -1,9 +1,10 @@
 // f and g of planes:2 and planes:3 on rows of bits: the same formulas for vectors and for words.
 //
-// A node's messages have one of four shapes. On a BSC all channel messages are one positive half
+// A node's messages have one of five shapes. On a BSC all channel messages are one positive half
 // unit (constant: nothing is stored). The g below a constant node gives magnitude 0 or 1 without
-// sign (one); the g below that a sign and magnitudes up to 2 (two); then up to 2^W - 1. f keeps the
-// shape.
+// sign: the inverse of the left neighbour's bits, which need not be stored again (fresh); what f
+// makes of it is stored (one). The g below that gives a sign and magnitudes up to 2 (two), and
+// then up to 2^W - 1 (three). f keeps the shape otherwise.
 //
 // Included once a target, inside Highway's namespace; no include guard of the usual kind.
 #if defined(FROSTLINE_PLANE_RULES_INL_H) == defined(HWY_TARGET_TOGGLE)
@@ -76,35 +77,6 @@ HWY_INLINE V Ternary(V a, V b, V c) {
 }
 #endif
 
-// A word of 64 messages' bits, for nodes that fit one.
-struct Word {
-  std::uint64_t bits;
-};
-template <int kTable>
-HWY_INLINE Word Ternary(Word a, Word b, Word c) {
-  const std::uint64_t x = a.bits;
-  const std::uint64_t y = b.bits;
-  const std::uint64_t z = c.bits;
-  switch (kTable) {
-    case kXor3:
-      return {x ^ y ^ z};
-    case kMajority:
-      return {(x & y) | ((x ^ y) & z)};
-    case kSelect:
-      return {(x & y) | (~x & z)};
-    case kMajorityNotSecond:
-      return {(~y & (x | z)) | (x & z)};
-    case kAndNotThird:
-      return {x & y & ~z};
-    case kOrAndNot:
-      return {x | (y & ~z)};
-    default:  // kAndXor
-      return {x & (y ^ z)};
-  }
-}
-HWY_INLINE Word And(Word a, Word b) { return {a.bits & b.bits}; }
-HWY_INLINE Word Xor(Word a, Word b) { return {a.bits ^ b.bits}; }
-HWY_INLINE Word AndNot(Word not_a, Word b) { return {~not_a.bits & b.bits}; }
 template <typename V>
 HWY_INLINE V And(V a, V b) {
   return hn::And(a, b);
@@ -118,18 +90,21 @@ HWY_INLINE V AndNot(V not_a, V b) {
   return hn::AndNot(not_a, b);
 }
 
-enum class Shape { constant, one, two, three };
+enum class Shape { constant, fresh, one, two, three };
 
-// What a shape stores: magnitude planes, and whether there is a sign.
-constexpr int MagnitudePlanes(Shape shape) { return static_cast<int>(shape); }
+// What a shape has: magnitude planes, and whether there is a sign.
+constexpr int MagnitudePlanes(Shape shape) {
+  return shape == Shape::constant ? 0 : shape == Shape::fresh ? 1 : static_cast<int>(shape) - 1;
+}
 constexpr bool HasSign(Shape shape) { return shape == Shape::two || shape == Shape::three; }
+constexpr Shape AfterF(Shape shape) { return shape == Shape::fresh ? Shape::one : shape; }
 // The shape that g makes of it when W magnitude bits are kept.
 template <int kW>
 constexpr Shape AfterG(Shape shape) {
-  return shape == Shape::constant ? Shape::one
-         : shape == Shape::one    ? Shape::two
-         : kW == 2                ? Shape::two
-                                  : Shape::three;
+  return shape == Shape::constant                       ? Shape::fresh
+         : shape == Shape::fresh || shape == Shape::one ? Shape::two
+         : kW == 2                                      ? Shape::two
+                                                        : Shape::three;
 }
 
 // Messages of a node, or of half of it: sign and magnitude planes; those that the shape lacks are
@@ -154,7 +129,7 @@ HWY_INLINE V Greater(const Message<V>& a, const Message<V>& b) {
 template <Shape kShape, typename V>
 HWY_INLINE Message<V> F(const Message<V>& a, const Message<V>& b) {
   Message<V> out;
-  if constexpr (kShape == Shape::one) {
+  if constexpr (!HasSign(kShape)) {
     out.m[0] = And(a.m[0], b.m[0]);
   } else {
     out.s = Xor(a.s, b.s);
@@ -175,7 +150,7 @@ HWY_INLINE V SignOfF(const Message<V>& a, const Message<V>& b) {
 // The sign of g alone: b's, but a's where the two disagree and a is larger.
 template <Shape kShape, typename V>
 HWY_INLINE V SignOfG(const Message<V>& a, const Message<V>& b, V bit) {
-  if constexpr (kShape == Shape::one) {
+  if constexpr (!HasSign(kShape)) {
     return Ternary<kAndNotThird>(bit, a.m[0], b.m[0]);
   } else {
     const V differ = Ternary<kXor3>(a.s, b.s, bit);
@@ -190,7 +165,7 @@ HWY_INLINE V SignOfG(const Message<V>& a, const Message<V>& b, V bit) {
 template <Shape kShape, int kW, typename V>
 HWY_INLINE Message<V> G(const Message<V>& a, const Message<V>& b, V bit) {
   Message<V> out;
-  if constexpr (kShape == Shape::one) {
+  if constexpr (!HasSign(kShape)) {
     out.s = Ternary<kAndNotThird>(bit, a.m[0], b.m[0]);
     out.m[0] = Xor(a.m[0], b.m[0]);
     out.m[1] = Ternary<kAndNotThird>(a.m[0], b.m[0], bit);

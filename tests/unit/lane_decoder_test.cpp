@@ -132,7 +132,8 @@ TEST(LaneDecoder, EqualsReferenceOnRandomFrozenSets) {
 
 TEST(LaneDecoder, EqualsReferenceOnLongBlocks) {
   Outcome outcome;
-  for (const auto& [log2, lanes] : {std::pair{14U, 8U}, {16U, 4U}, {20U, 1U}}) {
+  for (const auto& [log2, lanes] :
+       {std::pair{14U, 8U}, {16U, 4U}, {18U, 2U}, {20U, 1U}, {24U, 1U}}) {
     expect_equal(designed_code(log2, 3, 0.02, 0.1), 3, 0.0205, lanes, log2, outcome);
   }
 }
