@@ -3,7 +3,6 @@
 #include <algorithm>
 #include <array>
 #include <cmath>
-#include <limits>
 #include <stdexcept>
 #include <string>
 #include <type_traits>
@@ -18,7 +17,6 @@ namespace {
 
 constexpr double kPi = 3.14159265358979323846;
 constexpr double kLog2 = 0.69314718055994530942;
-constexpr double kNegativeInfinity = -std::numeric_limits<double>::infinity();
 
 // Above this mean functions of a Gaussian LLR are taken from their decaying form, below it from the
 // complement, so that neither loses its digits.

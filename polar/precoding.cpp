@@ -80,7 +80,7 @@ void move_state(const Rows& rows, std::size_t byte, std::size_t column, std::uin
   const std::uint64_t top = state[7];
   for (unsigned k = 7; k > 0; --k) state[k] = state[k - 1];
   state[0] = top;  // x^8 = x^4 + x^3 + x^2 + 1
-  for (const unsigned k : {2, 3, 4}) state[k] ^= top;
+  for (const unsigned k : {2U, 3U, 4U}) state[k] ^= top;
   for (unsigned k = 0; k < 8; ++k) {
     if (!((places >> k) & 1U)) state[k] ^= rows.get(8 * byte + k, column);
   }
@@ -113,7 +113,8 @@ Precoding parse_precoding(std::string_view word) {
   throw InputError("precoding '" + std::string(word) + "' is neither none nor state8");
 }
 
-// Row k gives the coefficient of x^0 of x^(122 + 96 k) times S. Why these:
+// Row k gives the coefficient of x^0 of x^(122 + 96 k) times S. No other matrix that was tried
+// measures better (tests/bench/precoding_rows.txt). Why these:
 // - A's polynomial is primitive, so every linear function of S is such a coefficient for exactly
 //   one exponent modulo 255, a step of A adds 1 to it, and any one row, seen at 8 successive steps,
 //   tells all of S.
