@@ -8,6 +8,7 @@
 #include "cli/command.h"
 #include "cli/design_file.h"
 #include "cli/grid.h"
+#include "cli/hardware_account.h"
 #include "cli/options.h"
 #include "cli/plot.h"
 #include "construct/designer.h"
@@ -32,11 +33,13 @@ Options make_options() {
       .value("against", "FILE", "show how another design of the same block length differs")
       .value("plot", "FILE",
              "draw error probabilities and frozen indices, or with --qber the FER over p; .svg or "
-             ".png")
-      .computing()
-      .epilogue(
-          "Example: how far does the design carry when the link drifts to 2.6 %?\n"
-          "  frostline inspect link.design.json --qber 0.026 --plot drift.svg\n");
+             ".png");
+  add_hardware_options(options);
+  options.computing().epilogue(
+      "Example: how far does the design carry when the link drifts to 2.6 %?\n"
+      "  frostline inspect link.design.json --qber 0.026 --plot drift.svg\n"
+      "And what does a decoder at 200 MHz take?\n"
+      "  frostline inspect link.design.json --clock-mhz 200 --processing-elements 64\n");
   return options;
 }
 
@@ -219,6 +222,7 @@ int run_inspect(const std::vector<std::string>& arguments) {
     require_distinct_files({options.text("FILE")}, {options.text("plot")});
   }
   const Design design = read_design(options.text("FILE"));
+  const HardwareChoice hardware = hardware_choice(options, design);
   Json root = design_summary(design);
   std::string account =
       options.text("FILE") + " is whole: counts and digests fit.\n" + describe(design);
@@ -228,6 +232,8 @@ int run_inspect(const std::vector<std::string>& arguments) {
     account += "A list decoder need not fork at " + grouped(*indices) + " of the " + grouped(open) +
                " open indices; it does at the other " + grouped(open - *indices) + ".\n";
   }
+  root["hardware"] = hardware_json(design, hardware);
+  account += describe_hardware(design, hardware);
   if (options.has("qber")) {
     const Drift drift = drift_to(design, options.number("qber"));
     root["at_qber"] = {{"qber", drift.qber},
