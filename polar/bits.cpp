@@ -85,14 +85,6 @@ std::string shown(char c) {
 
 }  // namespace
 
-std::size_t count_ones(Span<const std::uint64_t> words) {
-  std::size_t ones = 0;
-  for (const std::uint64_t word : words) {
-    ones += static_cast<std::size_t>(__builtin_popcountll(word));
-  }
-  return ones;
-}
-
 std::size_t BitString::count() const { return count_ones(words()); }
 
 BitString& BitString::operator^=(const BitString& other) {

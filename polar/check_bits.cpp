@@ -1,9 +1,12 @@
 #include "polar/check_bits.h"
 
+#include <sodium.h>
+
 #include <array>
 #include <stdexcept>
 #include <string>
 
+#include "polar/crc_folding.h"
 #include "polar/error.h"
 
 namespace frostline {
@@ -45,11 +48,13 @@ struct Crc {
   unsigned width;
   std::uint32_t generator;
   CrcTable table;
+  CrcFolding folding;
 };
 
 template <unsigned kWidth, std::uint32_t kGenerator>
 const Crc& crc() {
-  static constexpr Crc kCrc{kWidth, kGenerator, make_table(kGenerator, kWidth)};
+  static constexpr Crc kCrc{kWidth, kGenerator, make_table(kGenerator, kWidth),
+                            make_crc_folding(kGenerator, kWidth)};
   return kCrc;
 }
 
@@ -112,10 +117,22 @@ std::uint32_t check_bits(Span<const std::uint64_t> words, std::size_t first, std
   if (first % 8 != 0 || count % 8 != 0) {
     throw std::invalid_argument("check bits over a range that is not whole bytes");
   }
-  const CrcTable& table = crc_of(width).table;
+  const Crc& crc = crc_of(width);
+  const CrcTable& table = crc.table;
   const std::size_t end = first + count;
   std::uint32_t state = 0;
-  for (std::size_t i = first; i < end;) {
+  std::size_t i = first;
+  if (first % 64 == 0) {
+    std::uint8_t folded[16];
+    const auto* const bytes = reinterpret_cast<const std::uint8_t*>(words.data() + first / 64);
+    const std::size_t done = fold_crc(crc.folding, bytes, count / 64 * 8, 0, folded);
+    if (done > 0) {
+      for (const std::uint8_t byte : folded) state = advance_byte(table, state, byte);
+      sodium_memzero(folded, sizeof folded);
+      i += 8 * done;
+    }
+  }
+  while (i < end) {
     const std::uint64_t word = words[i / 64];
     if (i % 64 == 0 && end - i >= 64) {
       state = advance_word(table, state, word);

@@ -2,6 +2,8 @@
 
 #include <boost/crc.hpp>
 
+#include "polar/crc_folding.h"
+
 namespace frostline {
 
 Sha256 sha256(Span<const std::uint8_t> bytes) {
@@ -24,15 +26,31 @@ Sha256 Sha256Hasher::finish() {
   return digest;
 }
 
-void Crc32c::update(Span<const std::uint8_t> bytes) {
-  // A reflected register carried over between pieces; the final complement is value()'s.
-  boost::crc_optimal<32, 0x1EDC6F41, 0, 0, true, true> crc(0);
+namespace {
+
+constexpr std::uint32_t kCastagnoli = 0x1EDC6F41;
+
+// A reflected register goes in and comes out, without the final complement.
+std::uint32_t advance_castagnoli(std::uint32_t state, const std::uint8_t* bytes,
+                                 std::size_t count) {
   // Boost takes the remainder unreflected.
   std::uint32_t unreflected = 0;
-  for (unsigned b = 0; b < 32; ++b) unreflected |= ((register_ >> b) & 1U) << (31 - b);
+  for (unsigned b = 0; b < 32; ++b) unreflected |= ((state >> b) & 1U) << (31 - b);
+  boost::crc_optimal<32, kCastagnoli, 0, 0, true, true> crc(0);
   crc.reset(unreflected);
-  crc.process_bytes(bytes.data(), bytes.size());
-  register_ = crc.checksum();
+  crc.process_bytes(bytes, count);
+  return crc.checksum();
+}
+
+}  // namespace
+
+void Crc32c::update(Span<const std::uint8_t> bytes) {
+  static constexpr CrcFolding kFolding = make_crc_folding(kCastagnoli, 32);
+  std::uint8_t folded[16];
+  // The register is added to the first four bytes, as the table would do.
+  const std::size_t done = fold_crc(kFolding, bytes.data(), bytes.size(), register_, folded);
+  if (done > 0) register_ = advance_castagnoli(0, folded, sizeof folded);
+  register_ = advance_castagnoli(register_, bytes.data() + done, bytes.size() - done);
 }
 
 std::uint32_t crc32c(Span<const std::uint8_t> bytes) {

@@ -2,6 +2,7 @@
 
 #include <sodium.h>
 
+#include <algorithm>
 #include <cmath>
 #include <stdexcept>
 #include <string>
@@ -39,11 +40,6 @@ void RandomStream::refill() {
   used_ = 0;
 }
 
-std::uint64_t RandomStream::next() {
-  if (used_ == buffer_.size()) refill();
-  return buffer_[used_++];
-}
-
 std::uint64_t RandomStream::below(std::uint64_t bound) {
   if (bound == 0) throw std::invalid_argument("RandomStream::below(0)");
   // Values below 2^64 mod bound would be too frequent: they are drawn again.
@@ -55,8 +51,77 @@ std::uint64_t RandomStream::below(std::uint64_t bound) {
 
 double RandomStream::uniform() { return std::ldexp(static_cast<double>(next() >> 11), -53); }
 
+namespace {
+
+// Lengths of the runs of zeros between ones, by inversion of their distribution function. A table
+// over the top bits of a number gives nearly all of them at once.
+class GapTable {
+ public:
+  // REQUIRES: 0 < p < 1.
+  explicit GapTable(double p) {
+    // limits_[k]: 2^64 times the probability of a gap of at most k. Products only: the same
+    // numbers on every machine.
+    double longer = 1;
+    for (unsigned k = 0; k < kLongest; ++k) {
+      longer *= 1 - p;
+      limits_[k] = longer < kTiny ? ~std::uint64_t{0} : longer < 1 ? ~threshold(longer) + 1 : 0;
+    }
+    unsigned gap = 0;
+    for (std::uint64_t slot = 0; slot < kSlots; ++slot) {
+      while (gap < kLongest && limits_[gap] <= slot << kShift) ++gap;
+      first_[slot] = static_cast<std::uint8_t>(gap);
+    }
+  }
+
+  // The gap that a uniform number stands for; kLongest means that it is at least that long, and as
+  // gaps have no memory the rest of it is drawn anew.
+  unsigned gap(std::uint64_t uniform) const {
+    unsigned k = first_[uniform >> kShift];
+    while (k < kLongest && uniform >= limits_[k]) ++k;
+    return k;
+  }
+
+  static constexpr unsigned kLongest = 255;
+
+ private:
+  static constexpr unsigned kShift = 52;
+  static constexpr std::uint64_t kSlots = std::uint64_t{1} << (64 - kShift);
+  static constexpr double kTiny = 0x1p-60;
+
+  std::array<std::uint64_t, kLongest> limits_;
+  std::array<std::uint8_t, kSlots> first_;
+};
+
+// Above it as many numbers are drawn for gaps as for bits.
+constexpr double kSparse = 0.125;
+
+}  // namespace
+
 void RandomStream::bernoulli(double p, std::size_t bits, Span<std::uint64_t> words) {
   if (!(p >= 0 && p <= 1)) throw std::invalid_argument("probability outside 0 .. 1");
+  if (p < kSparse) {
+    draw_gaps(p, bits, words);
+  } else {
+    draw_bits(p, bits, words);
+  }
+}
+
+void RandomStream::draw_gaps(double p, std::size_t bits, Span<std::uint64_t> words) {
+  std::fill_n(words.begin(), (bits + 63) / 64, 0);
+  if (p == 0) return;
+  const GapTable table(p);
+  std::size_t position = 0;
+  while (true) {
+    const unsigned gap = table.gap(next());
+    position += gap;
+    if (position >= bits) return;
+    if (gap == GapTable::kLongest) continue;
+    words[position / 64] |= std::uint64_t{1} << (position % 64);
+    ++position;
+  }
+}
+
+void RandomStream::draw_bits(double p, std::size_t bits, Span<std::uint64_t> words) {
   const std::size_t count = (bits + 63) / 64;
   const std::uint64_t limit = p < 1 ? threshold(p) : 0;
   for (std::size_t i = 0; i < count; ++i) {

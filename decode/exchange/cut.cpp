@@ -9,10 +9,11 @@
 namespace frostline {
 
 unsigned default_lanes(BlockLength block_length) {
+  // Measured: fewer lanes cost overhead a node of the decoder's tree, more cost cache.
   const unsigned n = block_length.log2();
-  if (n <= 12) return 512;
-  if (n <= 15) return 512U >> (n - 12);
-  if (n == 16) return 64;
+  if (n <= 12) return 256;
+  if (n <= 14) return 128;
+  if (n <= 16) return 64;
   if (n <= 18) return 32;
   return n <= 21 ? 16 : 8;
 }

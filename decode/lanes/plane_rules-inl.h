@@ -161,7 +161,7 @@ HWY_INLINE V SignOfG(const Message<V>& a, const Message<V>& b, V bit) {
 // g: with t = sign_a xor sign_b xor bit the magnitudes are added (t = 0) or subtracted (t = 1).
 // Sum and difference are a xor b xor carry alike; the carry of the sum and the borrow of larger
 // minus smaller are the majority of the carry before and a and b, the larger one inverted in a
-// difference.
+// difference. A difference ends without a borrow, so that only a sum saturates.
 template <Shape kShape, int kW, typename V>
 HWY_INLINE Message<V> G(const Message<V>& a, const Message<V>& b, V bit) {
   Message<V> out;
@@ -170,19 +170,23 @@ HWY_INLINE Message<V> G(const Message<V>& a, const Message<V>& b, V bit) {
     out.m[0] = Xor(a.m[0], b.m[0]);
     out.m[1] = Ternary<kAndNotThird>(a.m[0], b.m[0], bit);
   } else {
+    constexpr int kIn = MagnitudePlanes(kShape);
+    constexpr int kLast = kIn - 1;
     const V t = Ternary<kXor3>(a.s, b.s, bit);
     const V a_inverted = And(t, Greater<kShape>(a, b));
     const V b_inverted = Xor(t, a_inverted);
     out.s = Xor(b.s, a_inverted);
     out.m[0] = Xor(a.m[0], b.m[0]);
     V carry = Ternary<kAndXor>(Xor(a.m[0], a_inverted), b.m[0], b_inverted);
-    constexpr int kIn = MagnitudePlanes(kShape);
-    for (int i = 1; i < kIn; ++i) {
+    for (int i = 1; i < kLast; ++i) {
       out.m[i] = Ternary<kXor3>(a.m[i], b.m[i], carry);
       carry = Ternary<kMajority>(Xor(a.m[i], a_inverted), Xor(b.m[i], b_inverted), carry);
     }
+    out.m[kLast] = Ternary<kXor3>(a.m[kLast], b.m[kLast], carry);
+    // Of the sum alone: where t is 1 it means nothing.
+    carry = Ternary<kMajority>(a.m[kLast], b.m[kLast], carry);
     if constexpr (kIn < kW) {
-      out.m[kIn] = carry;  // a difference ends without a borrow
+      out.m[kIn] = AndNot(t, carry);
     } else {
       for (int i = 0; i < kIn; ++i) out.m[i] = Ternary<kOrAndNot>(out.m[i], carry, t);
     }

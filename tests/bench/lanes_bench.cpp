@@ -61,7 +61,7 @@ void grid(benchmark::internal::Benchmark* benchmark) {
 BENCHMARK(LaneDecoding)->Apply(grid);
 // Other numbers of lanes, single blocks among them.
 void lanes_grid(benchmark::internal::Benchmark* benchmark) {
-  for (const auto& [n, most] : {std::pair{12, 512}, {16, 512}, {20, 128}, {22, 64}}) {
+  for (const auto& [n, most] : {std::pair{10, 512}, {12, 512}, {14, 512}, {16, 512}, {18, 64}, {20, 128}, {22, 64}, {24, 8}}) {
     for (int lanes = 1; lanes <= most; lanes *= 2) benchmark->Args({n, 20, lanes});
   }
 }

@@ -8,6 +8,7 @@
 #include <string_view>
 
 #include "polar/error.h"
+#include "polar/simd.h"
 #include "polar/syndrome.h"
 #include "tests/support/gf2_matrix.h"
 #include "tests/support/random_bits.h"
@@ -173,6 +174,26 @@ TEST(CheckBits, OtherWidthsAndPartialBytesAreRejected) {
   EXPECT_EQ(check_bits(bits, 0), 0U);
   EXPECT_THROW(check_bits(bits.words(), 0, 12, 16), std::invalid_argument);
   EXPECT_THROW(check_bits(bits.words(), 4, 16, 16), std::invalid_argument);
+}
+
+// Folding by carry-less multiplication and the tables, at lengths around those where each begins.
+TEST(CheckBits, AreThoseOfBoostOnEveryVectorSetAtEveryLength) {
+  Generator generator(43);
+  for (const std::string& name : simd_names()) {
+    force_simd(name);
+    for (const unsigned width : kWidths) {
+      for (const std::size_t first : {0, 8, 64, 192}) {
+        for (std::size_t count = 968; count < 1800; count += 56) {
+          const BitString bits = testing::random_bits(generator, first + count);
+          BitString range(count);
+          copy_bits(bits.words(), first, range.words(), 0, count);
+          ASSERT_EQ(check_bits(bits.words(), first, count, width), boost_crc(range, width))
+              << name << ", width " << width << ", bits " << first << " + " << count;
+        }
+      }
+    }
+  }
+  reset_simd();
 }
 
 }  // namespace

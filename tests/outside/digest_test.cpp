@@ -3,11 +3,14 @@
 
 #include <gtest/gtest.h>
 
+#include <boost/crc.hpp>
 #include <cmath>
 #include <cstdint>
 #include <string>
 #include <vector>
 
+#include "polar/random.h"
+#include "polar/simd.h"
 #include "polar/tag.h"
 
 namespace frostline {
@@ -64,6 +67,28 @@ TEST(Digest, Crc32cOfPiecesIsThatOfTheWhole) {
     crc.update(bytes_of(text.substr(cut)));
     EXPECT_EQ(crc.value(), crc32c(bytes_of(text)));
   }
+}
+
+// boost::crc_32c's parameters, bit by bit, beside folding on every vector set, in pieces of any
+// length.
+TEST(Digest, Crc32cIsThatOfBoostOnEveryVectorSet) {
+  std::vector<std::uint8_t> bytes(3000);
+  RandomStream random(1, "crc", 0);
+  for (std::uint8_t& byte : bytes) byte = static_cast<std::uint8_t>(random.next());
+  for (const std::string& name : simd_names()) {
+    force_simd(name);
+    for (std::size_t first = 0; first < 20; ++first) {
+      for (std::size_t count = 100; count < 700; count += 37) {
+        boost::crc_basic<32> expected(0x1EDC6F41, 0xFFFFFFFF, 0xFFFFFFFF, true, true);
+        expected.process_bytes(bytes.data() + first, 2 * count);
+        Crc32c crc;
+        crc.update({bytes.data() + first, count});
+        crc.update({bytes.data() + first + count, count});
+        ASSERT_EQ(crc.value(), expected.checksum()) << name << ", " << first << " + " << count;
+      }
+    }
+  }
+  reset_simd();
 }
 
 TEST(Digest, HexReadsBackAndNothingElse) {

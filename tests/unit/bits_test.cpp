@@ -8,6 +8,7 @@
 #include <vector>
 
 #include "polar/error.h"
+#include "polar/simd.h"
 #include "tests/support/random_bits.h"
 
 namespace frostline {
@@ -96,6 +97,20 @@ TEST(BitString, AppendAndSliceCutAnywhere) {
     ASSERT_EQ(joined.slice(a.size(), b.size()), b);
     expect_zero_beyond_size(joined.slice(a.size() / 2, b.size()));
   }
+}
+
+TEST(CountOnes, CountsBitByBitOnEveryVectorSet) {
+  Generator generator(41);
+  for (const std::string& name : simd_names()) {
+    force_simd(name);
+    for (std::size_t bits = 0; bits < 1500; bits += 63) {
+      const BitString string = testing::random_bits(generator, bits);
+      std::size_t ones = 0;
+      for (std::size_t i = 0; i < bits; ++i) ones += string[i];
+      EXPECT_EQ(count_ones(string.words()), ones) << name << ", " << bits << " bits";
+    }
+  }
+  reset_simd();
 }
 
 TEST(CopyBits, WritesTheRangeAndNothingElse) {

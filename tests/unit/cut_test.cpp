@@ -90,9 +90,9 @@ TEST(Cut, TakesPowersOfTwoUpTo512) {
 }
 
 TEST(Cut, DefaultLanesAreTheTableOfTheFormat) {
-  // designs/FORMATS.md: 512 up to N = 2^12, 256, 128, 64 at 2^13, 2^14, 2^15, 64 at 2^16, 32 up to
-  // 2^18, 16 up to 2^21, 8 above.
-  const unsigned table[] = {512, 512, 512, 512, 512, 512, 512, 512, 512, 512, 256,
+  // designs/FORMATS.md: 256 up to N = 2^12, 128 up to 2^14, 64 up to 2^16, 32 up to 2^18, 16 up to
+  // 2^21, 8 above.
+  const unsigned table[] = {256, 256, 256, 256, 256, 256, 256, 256, 256, 256, 128,
                             128, 64,  64,  32,  32,  16,  16,  16,  8,   8,   8};
   for (unsigned n = 3; n <= 24; ++n) {
     EXPECT_EQ(default_lanes(BlockLength::from_log2(n)), table[n - 3]) << "2^" << n;

@@ -3,6 +3,8 @@
 #include <gtest/gtest.h>
 #include <sodium.h>
 
+#include <algorithm>
+#include <boost/math/distributions/chi_squared.hpp>
 #include <cmath>
 #include <cstring>
 #include <stdexcept>
@@ -70,6 +72,53 @@ TEST(RandomStream, BernoulliHasItsFrequencyAtEveryPlace) {
     expect_share(neighbours, 64 * rounds, p * p);  // independent words
     for (const std::size_t ones : at_place) expect_share(ones, rounds, p);
   }
+}
+
+// Pearson's test; the quantile comes from Boost.Math.
+TEST(RandomStream, GapsBetweenOnesAreGeometric) {
+  for (const double p : {0.004, 0.02, 0.124}) {
+    RandomStream random(5, "test", 0);
+    BitString bits(std::size_t{1} << 24);
+    random.bernoulli(p, bits.size(), bits.words());
+    constexpr std::size_t kBins = 400;  // the last one is for all longer gaps
+    std::vector<double> seen(kBins);
+    double gaps = 0;
+    std::size_t gap = 0;
+    for (std::size_t i = 0; i < bits.size(); ++i) {
+      if (!bits[i]) {
+        ++gap;
+        continue;
+      }
+      ++seen[std::min(gap, kBins - 1)];
+      ++gaps;
+      gap = 0;
+    }
+    double chi_squared = 0;
+    double bins = 0;
+    double expected_rest = gaps;
+    double seen_rest = gaps;
+    for (std::size_t k = 0; k + 1 < kBins; ++k) {
+      const double expected = gaps * p * std::pow(1 - p, static_cast<double>(k));
+      if (expected < 10) break;
+      chi_squared += (seen[k] - expected) * (seen[k] - expected) / expected;
+      expected_rest -= expected;
+      seen_rest -= seen[k];
+      ++bins;
+    }
+    chi_squared += (seen_rest - expected_rest) * (seen_rest - expected_rest) / expected_rest;
+    const boost::math::chi_squared distribution(bins);
+    EXPECT_LT(chi_squared, quantile(distribution, 1 - 1e-5)) << "p = " << p;
+    EXPECT_GT(chi_squared, quantile(distribution, 1e-5)) << "p = " << p;
+  }
+}
+
+TEST(RandomStream, RareOnesAreDrawnToo) {
+  RandomStream random(6, "test", 0);
+  BitString bits(std::size_t{1} << 24);
+  random.bernoulli(1e-5, bits.size(), bits.words());
+  expect_share(bits.count(), bits.size(), 1e-5);
+  random.bernoulli(1e-17, bits.size(), bits.words());  // 1 - p rounds to 1
+  EXPECT_EQ(bits.count(), 0U);
 }
 
 TEST(RandomStream, BernoulliFillsTheLastWordWithZeros) {
