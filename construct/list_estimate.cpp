@@ -37,18 +37,13 @@ Place clamped(Place place) { return {place.knot, std::clamp(place.share, 0.0, 1.
 
 double mix(double a, double b, double share) { return a + share * (b - a); }
 
-// ln of the saving of L = 2^(k + 1) at the table's list sizes.
-double log_table_saving(const Place& fer, const Place& length, const Place& qber, unsigned k) {
-  const auto at = [&](std::size_t t, std::size_t n, std::size_t p) {
-    return std::log(saving_table::kSaving[t][n][p][k]);
+// ln of the saving of L = 2^(k + 1) at the table's list sizes, for FER 0.1.
+double log_table_saving(const Place& length, const Place& qber, unsigned k) {
+  const auto along_qber = [&](std::size_t n) {
+    return mix(std::log(saving_table::kSaving[n][qber.knot][k]),
+               std::log(saving_table::kSaving[n][qber.knot + 1][k]), qber.share);
   };
-  const auto along_qber = [&](std::size_t t, std::size_t n) {
-    return mix(at(t, n, qber.knot), at(t, n, qber.knot + 1), qber.share);
-  };
-  const auto along_length = [&](std::size_t t) {
-    return mix(along_qber(t, length.knot), along_qber(t, length.knot + 1), length.share);
-  };
-  return mix(along_length(fer.knot), along_length(fer.knot + 1), fer.share);
+  return mix(along_qber(length.knot), along_qber(length.knot + 1), length.share);
 }
 
 void require_setting(const ListSetting& setting) {
@@ -76,20 +71,22 @@ double list_saving(const ListSetting& setting, double fer) {
   unsigned log2_list = 0;
   while ((1U << log2_list) < setting.list) ++log2_list;
   if (log2_list == 0) return 0;
-  static const auto log_fers = logarithms(saving_table::kFers);
   static const auto log_qbers = logarithms(saving_table::kQbers);
-  const Place at_fer = clamped(place_among(log_fers, std::log(fer)));
   const Place at_qber = clamped(place_among(log_qbers, std::log(setting.qber)));
   // Short blocks stay at the table's edge: there is no more to save than all of the loss.
   Place at_length = place_among(saving_table::kLog2Lengths, setting.block_length.log2());
   at_length.share = std::max(0.0, at_length.share);
-  const auto log_saving = [&](unsigned k) {
-    return log_table_saving(at_fer, at_length, at_qber, k);
-  };
+  const auto log_saving = [&](unsigned k) { return log_table_saving(at_length, at_qber, k); };
   const unsigned last = saving_table::kLog2Lists - 1;
   double value = log_saving(std::min(log2_list - 1, last));
   double step = log_saving(last) - log_saving(last - 1);
   for (unsigned k = last + 1; k < log2_list; ++k) value += step *= 0.75;
+  // The growth from FER 0.1 to 0.01, as far as 0.001 on one side and 1 on the other.
+  const Place on_growth = clamped(at_length);
+  const double growth = mix(saving_table::kGrowth[on_growth.knot],
+                            saving_table::kGrowth[on_growth.knot + 1], on_growth.share);
+  const double decades = std::clamp(-1 - std::log10(fer), -1.0, 2.0);
+  value += decades * std::log(growth);
   const double share =
       setting.precoding == Precoding::none ? saving_table::kShareWithoutPrecoding : 1;
   return std::min(0.9, share * std::exp(value));

@@ -25,9 +25,10 @@ struct ListSetting {
 };
 
 // 1 - M_list / M_union at a FER in (0, 1): 0 for L = 1, below 1 always. Beyond the table the
-// logarithm of the saving goes on straight in log2 N, stays in ln p and ln FER, and grows by three
-// quarters of the step before with each doubling of L. Throws std::invalid_argument outside the
-// ranges, or where there is no estimate.
+// logarithm of the saving goes on straight in log2 N, stays as it is in ln p, and grows by three
+// quarters of the step before with each doubling of L; with the FER it changes by a factor a
+// decade, down to FER 0.001. Throws std::invalid_argument outside the ranges, or where there is no
+// estimate.
 double list_saving(const ListSetting& setting, double fer);
 
 // Estimated FER of the list decoder when the first M indices of a freezing order are frozen, for

@@ -3,7 +3,10 @@
 #include <gtest/gtest.h>
 
 #include <cmath>
+#include <fstream>
+#include <sstream>
 #include <stdexcept>
+#include <string>
 
 #include "construct/designer.h"
 #include "construct/selection.h"
@@ -43,6 +46,35 @@ TEST(ListEstimate, SavesMoreWithLongerListsAndLessWithLongerBlocks) {
       }
     }
   }
+}
+
+// tests/bench/list_efficiency.txt has what was measured; the command is at the top of the script of
+// that name.
+TEST(ListEstimate, IsWhatWasMeasured) {
+  std::ifstream file(std::string(FROSTLINE_SOURCE_DIR) + "/tests/bench/list_efficiency.txt");
+  std::string line;
+  ASSERT_TRUE(std::getline(file, line));
+  int compared = 0;
+  while (std::getline(file, line)) {
+    std::istringstream fields(line);
+    std::size_t bits = 0;
+    double p = 0;
+    unsigned list = 0;
+    std::string precoding;
+    std::string decoder;
+    double fer = 0;
+    std::string skipped;
+    double saving = 0;
+    fields >> bits >> p >> list >> precoding >> decoder >> fer;
+    for (int k = 0; k < 7; ++k) fields >> skipped;
+    ASSERT_TRUE(fields >> saving) << line;
+    ASSERT_EQ(precoding, "state8");
+    // The table is for FER 0.1; the change with the FER is a mean over lists.
+    const double allowed = fer == 0.1 ? 1e-4 : 0.02;
+    EXPECT_NEAR(list_saving(setting_of(bits, p, list), fer), saving, allowed) << line;
+    ++compared;
+  }
+  EXPECT_GT(compared, 60);
 }
 
 TEST(ListEstimate, SavesLessWithoutPrecoding) {
