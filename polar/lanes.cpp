@@ -16,13 +16,19 @@ namespace hn = hwy::HWY_NAMESPACE;
 // Squares of 64 by 64 bits that are transposed together: word r of square q is squares[8 r + q].
 constexpr std::size_t kSquares = 8;
 
+// Bit k of the word: whether bit `bit` of k is 0.
+constexpr std::uint64_t kBitIsZero[6] = {0x5555555555555555U, 0x3333333333333333U,
+                                         0x0F0F0F0F0F0F0F0FU, 0x00FF00FF00FF00FFU,
+                                         0x0000FFFF0000FFFFU, 0x00000000FFFFFFFFU};
+
 // Swaps the upper right and lower left quarters of all blocks of 2 kWidth by 2 kWidth bits
-// (H. S. Warren, Hacker's Delight, 7-3).
-template <int kWidth>
+// (H. S. Warren, Hacker's Delight, 7-3): bit log2(kWidth) of a row's number and of a column's
+// change places.
+template <int kWidth, std::size_t kRows = 64>
 HWY_INLINE void SwapQuarters(std::uint64_t* HWY_RESTRICT squares, std::uint64_t mask) {
   const hn::CappedTag<std::uint64_t, kSquares> d;
   const auto lower = hn::Set(d, mask);
-  for (std::size_t r = 0; r < 64; r = (r + kWidth + 1) & ~std::size_t{kWidth}) {
+  for (std::size_t r = 0; r < kRows; r = (r + kWidth + 1) & ~std::size_t{kWidth}) {
     std::uint64_t* const top = squares + kSquares * r;
     std::uint64_t* const bottom = squares + kSquares * (r + kWidth);
     for (std::size_t q = 0; q < kSquares; q += hn::Lanes(d)) {
@@ -63,6 +69,115 @@ void TransposeInSquares(const std::uint64_t* from, std::size_t tall, std::size_t
   sodium_memzero(squares, sizeof squares);
 }
 
+// Bits kHigh and kLow of every bit's place in its word change places.
+template <unsigned kHigh, unsigned kLow, class V>
+HWY_INLINE V SwapPlaceBits(V word) {
+  const hn::DFromV<V> d;
+  constexpr int kShift = (1 << kHigh) - (1 << kLow);
+  const auto mask = hn::Set(d, kBitIsZero[kHigh] & ~kBitIsZero[kLow]);
+  const auto differ = hn::And(hn::Xor(word, hn::ShiftRight<kShift>(word)), mask);
+  return hn::Xor(word, hn::Xor(differ, hn::ShiftLeft<kShift>(differ)));
+}
+
+// Rotates the six bits of every bit's place in its word to the right by kBy: what stood in the low
+// kBy bits stands in the high ones then.
+template <unsigned kBy, class V>
+HWY_INLINE V RotatePlaces(V w) {
+  if constexpr (kBy == 1) {
+    w = SwapPlaceBits<1, 0>(w);
+    w = SwapPlaceBits<2, 1>(w);
+    w = SwapPlaceBits<3, 2>(w);
+    w = SwapPlaceBits<4, 3>(w);
+    return SwapPlaceBits<5, 4>(w);
+  } else if constexpr (kBy == 2) {
+    w = SwapPlaceBits<2, 0>(SwapPlaceBits<3, 1>(w));
+    return SwapPlaceBits<4, 2>(SwapPlaceBits<5, 3>(w));
+  } else if constexpr (kBy == 3) {
+    return SwapPlaceBits<3, 0>(SwapPlaceBits<4, 1>(SwapPlaceBits<5, 2>(w)));
+  } else if constexpr (kBy == 4) {
+    w = SwapPlaceBits<4, 2>(SwapPlaceBits<5, 3>(w));
+    return SwapPlaceBits<2, 0>(SwapPlaceBits<3, 1>(w));
+  } else {
+    w = SwapPlaceBits<5, 4>(w);
+    w = SwapPlaceBits<4, 3>(w);
+    w = SwapPlaceBits<3, 2>(w);
+    w = SwapPlaceBits<2, 1>(w);
+    return SwapPlaceBits<1, 0>(w);
+  }
+}
+
+template <unsigned kBy>
+HWY_INLINE void RotateAllPlaces(std::uint64_t* HWY_RESTRICT words, std::size_t count) {
+  const hn::CappedTag<std::uint64_t, kSquares> d;
+  for (std::size_t i = 0; i < count; i += hn::Lanes(d)) {
+    hn::Store(RotatePlaces<kBy>(hn::Load(d, words + i)), d, words + i);
+  }
+}
+
+// Swaps the bits of a word's number in its group with the low bits of places.
+template <std::size_t kColumns>
+HWY_INLINE void SwapGroups(std::uint64_t* HWY_RESTRICT squares) {
+  if constexpr (kColumns >= 32) SwapQuarters<16, kColumns>(squares, kBitIsZero[4]);
+  if constexpr (kColumns >= 16) SwapQuarters<8, kColumns>(squares, kBitIsZero[3]);
+  if constexpr (kColumns >= 8) SwapQuarters<4, kColumns>(squares, kBitIsZero[2]);
+  if constexpr (kColumns >= 4) SwapQuarters<2, kColumns>(squares, kBitIsZero[1]);
+  SwapQuarters<1, kColumns>(squares, kBitIsZero[0]);
+}
+
+// A matrix of 64 groups rows and 2^kLog2 columns of bits, fewer than 64, row after row, is written
+// column after column; the other way round where kBack. REQUIRES: groups a multiple of kSquares.
+//
+// A group is 64 rows in 2^kLog2 words. The top kLog2 bits of a row's number are the number of its
+// word; they change places with the column's number, which is the low end of a bit's place, and
+// must then go to the top of the place.
+template <unsigned kLog2, bool kBack>
+void TransposeGroups(const std::uint64_t* from, std::size_t groups, std::uint64_t* to) {
+  constexpr std::size_t kColumns = std::size_t{1} << kLog2;
+  HWY_ALIGN std::uint64_t squares[kColumns * kSquares];
+  for (std::size_t g = 0; g < groups; g += kSquares) {
+    for (std::size_t q = 0; q < kSquares; ++q) {
+      for (std::size_t w = 0; w < kColumns; ++w) {
+        squares[kSquares * w + q] = kBack ? from[w * groups + g + q] : from[(g + q) * kColumns + w];
+      }
+    }
+    if constexpr (kBack) RotateAllPlaces<6 - kLog2>(squares, kColumns * kSquares);
+    SwapGroups<kColumns>(squares);
+    if constexpr (!kBack) RotateAllPlaces<kLog2>(squares, kColumns * kSquares);
+    for (std::size_t q = 0; q < kSquares; ++q) {
+      for (std::size_t w = 0; w < kColumns; ++w) {
+        (kBack ? to[(g + q) * kColumns + w] : to[w * groups + g + q]) = squares[kSquares * w + q];
+      }
+    }
+  }
+  sodium_memzero(squares, sizeof squares);
+}
+
+template <bool kBack>
+void TransposeInGroups(const std::uint64_t* from, std::size_t groups, unsigned log2_columns,
+                       std::uint64_t* to) {
+  switch (log2_columns) {
+    case 1:
+      return TransposeGroups<1, kBack>(from, groups, to);
+    case 2:
+      return TransposeGroups<2, kBack>(from, groups, to);
+    case 3:
+      return TransposeGroups<3, kBack>(from, groups, to);
+    case 4:
+      return TransposeGroups<4, kBack>(from, groups, to);
+    default:
+      return TransposeGroups<5, kBack>(from, groups, to);
+  }
+}
+
+void GroupsToColumns(const std::uint64_t* from, std::size_t groups, unsigned log2_columns,
+                     std::uint64_t* to) {
+  TransposeInGroups<false>(from, groups, log2_columns, to);
+}
+void ColumnsToGroups(const std::uint64_t* from, std::size_t groups, unsigned log2_columns,
+                     std::uint64_t* to) {
+  TransposeInGroups<true>(from, groups, log2_columns, to);
+}
+
 }  // namespace HWY_NAMESPACE
 }  // namespace frostline
 HWY_AFTER_NAMESPACE();
@@ -76,6 +191,8 @@ HWY_AFTER_NAMESPACE();
 namespace frostline {
 
 HWY_EXPORT(TransposeInSquares);
+HWY_EXPORT(GroupsToColumns);
+HWY_EXPORT(ColumnsToGroups);
 
 namespace {
 
@@ -176,7 +293,15 @@ void transpose_bits(Span<const std::uint64_t> from, unsigned log2_rows, unsigned
   if (from.size() != words || to.size() != words) {
     throw std::invalid_argument("a batch of another size");
   }
-  if (log2_rows + log2_columns < 7) {
+  // Rows in groups of 64, and those by eight.
+  constexpr unsigned kLog2Groups = 9;
+  if (log2_columns > 0 && log2_columns < 6 && log2_rows >= kLog2Groups) {
+    HWY_DYNAMIC_DISPATCH(GroupsToColumns)
+    (from.data(), (std::size_t{1} << log2_rows) / 64, log2_columns, to.data());
+  } else if (log2_rows > 0 && log2_rows < 6 && log2_columns >= kLog2Groups) {
+    HWY_DYNAMIC_DISPATCH(ColumnsToGroups)
+    (from.data(), (std::size_t{1} << log2_columns) / 64, log2_rows, to.data());
+  } else if (log2_rows + log2_columns < 7) {
     transpose_bit_by_bit(from, std::size_t{1} << log2_rows, std::size_t{1} << log2_columns, to);
   } else if (log2_columns < 6) {
     repeat_pass(rotate_index_right, log2_columns, from, to);

@@ -42,6 +42,13 @@ void SyndromeFormer::scatter(const BitString& syndrome, unsigned lanes,
   }
 }
 
+void SyndromeFormer::subtract(const BitString& syndrome, unsigned lanes,
+                              Span<std::uint64_t> rows) const {
+  BitString own = gather(rows, lanes);
+  own ^= syndrome;
+  scatter(own, lanes, rows);
+}
+
 BitString SyndromeFormer::syndrome(const BitString& block) const {
   if (block.size() != frozen_.block_length().bits()) {
     throw std::invalid_argument("syndrome of a block of another length");

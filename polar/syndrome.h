@@ -28,6 +28,9 @@ class SyndromeFormer {
   // Puts M lanes bits back at the frozen rows and zeros elsewhere. REQUIRES: syndrome.size() ==
   // M lanes (std::invalid_argument otherwise).
   void scatter(const BitString& syndrome, unsigned lanes, Span<std::uint64_t> rows) const;
+  // Adds M lanes bits to the frozen rows and clears the others: from the public rows of one end and
+  // the syndrome of the other to their difference. REQUIRES: as scatter.
+  void subtract(const BitString& syndrome, unsigned lanes, Span<std::uint64_t> rows) const;
 
   // The syndrome of one block of N bits: M bits.
   BitString syndrome(const BitString& block) const;

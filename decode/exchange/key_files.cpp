@@ -98,6 +98,17 @@ void KeySink::write(Span<const std::uint64_t> words, std::size_t count) {
   bits_ += count;
 }
 
+void KeySink::write_packed(Span<const std::uint8_t> bytes) {
+  if (format_ == KeyFormat::packed) {
+    if (bits_ % 8 != 0) throw std::invalid_argument("bits after the end of a packed key");
+    sink_->write(bytes);
+    bits_ += 8 * bytes.size();
+  } else {
+    const BitString bits = bits_from_packed(bytes, 8 * bytes.size());
+    write(bits.words(), bits.size());
+  }
+}
+
 void KeySink::finish() {
   static const std::uint8_t kLineFeed[] = {'\n'};
   if (format_ == KeyFormat::text) sink_->write(Span<const std::uint8_t>(kLineFeed, 1));

@@ -53,6 +53,8 @@ class KeySink {
   // Appends the first count bits of words. REQUIRES: in the packed format only the last call of
   // all may have a count that is no multiple of 8.
   void write(Span<const std::uint64_t> words, std::size_t count);
+  // Appends whole bytes in the packed order.
+  void write_packed(Span<const std::uint8_t> bytes);
   // Ends a text with a line feed.
   void finish();
   std::uint64_t bits() const { return bits_; }

@@ -22,7 +22,7 @@ constexpr double kRelatedRise = 11.3;
 // QBERs below this are not told apart from 0.
 constexpr double kLeastQber = 1e-12;
 // The lightest nodes tell the most; so many are enough, and few enough to look at every pair.
-constexpr std::size_t kMostNodes = 8192;
+constexpr std::size_t kMostNodes = 3000;
 
 unsigned popcount(std::uint32_t value) {
   unsigned count = 0;
@@ -161,8 +161,8 @@ std::vector<DifferenceCounter::SharedPositions> DifferenceCounter::shared_positi
       const std::uint32_t lower = b.prefix & ((std::uint32_t{1} << lower_bits) - 1);
       const std::uint32_t upper = b.prefix >> lower_bits;
       const unsigned shared = a.prefix_bits - popcount(a.prefix | upper);
-      const double found =
-          std::ldexp(1.0, static_cast<int>(n - b.prefix_bits + lower_bits - popcount(lower)));
+      const auto found = static_cast<double>(std::uint64_t{1}
+                                             << (n - b.prefix_bits + lower_bits - popcount(lower)));
       count_of(a.log2_weight, b.log2_weight, shared) += found;
       if (lower_bits != 0) count_of(b.log2_weight, a.log2_weight, shared) += found;
     }

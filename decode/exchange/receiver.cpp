@@ -22,9 +22,13 @@ struct ReconcileWork {
   Batch batch;
   MessageRecord record;
   KeyWords rows;          // of x_B as it lies in the key
-  KeyWords corrected;     // block after block: x_B plus the error pattern
+  KeyWords blocks;        // block after block: x_B, then x_B plus the error pattern
+  KeyWords difference;    // rows
+  KeyWords error_rows;    //
   KeyWords errors;        // block after block: the error pattern
+  KeyBytes packed;        // of blocks
   BitString lane_agrees;  // check bits of the corrected block equal the sender's
+  std::vector<std::uint32_t> lane_errors;
   DifferenceCounts counts;
 };
 
@@ -52,39 +56,59 @@ std::optional<ReconcileSummary::Interval> qber_of_all_blocks(const ReconcileSumm
                                     known + share * failed.high};
 }
 
+// Which lanes have all bits of the rows 0.
+BitString lanes_without_ones(const BitString& rows, unsigned lanes) {
+  BitString clear(lanes);
+  for (unsigned lane = 0; lane < lanes; ++lane) {
+    bool ones = false;
+    for (std::size_t i = lane; i < rows.size(); i += lanes) ones = ones || rows[i];
+    clear.set(lane, !ones);
+  }
+  return clear;
+}
+
+// Number of ones of every block.
+void count_errors(const KeyWords& blocks, std::size_t block_bits,
+                  std::vector<std::uint32_t>& errors) {
+  KeyWords block(words_for(block_bits));
+  for (std::size_t lane = 0; lane < errors.size(); ++lane) {
+    Span<const std::uint64_t> words = block;
+    if (block_bits % 64 == 0) {
+      words = Span<const std::uint64_t>(blocks).subspan(lane * (block_bits / 64), block_bits / 64);
+    } else {
+      copy_bits(blocks, block_bits * lane, block, 0, block_bits);
+    }
+    errors[lane] = static_cast<std::uint32_t>(count_ones(words));
+  }
+}
+
 // Forms the syndrome difference, decodes it, and checks every lane.
 void reconcile_batch(const SyndromeFormer& former, const DifferenceCounter& counter,
                      const Code& code, const BatchDecoder& decoder, const Cut& cut,
                      ReconcileWork& work) {
   const unsigned lanes = work.batch.lanes;
-  KeyWords difference = work.rows;
-  former.to_public_rows(difference, lanes);
-  BitString syndrome = former.gather(difference, lanes);
+  rows_as_blocks(work.rows, cut, work.batch, work.blocks);
   // Before the decoder's answer is known, so that it may use the check bits to choose paths.
-  BitString checks = lane_checks(rows_as_blocks(work.rows, cut, work.batch), code, lanes);
+  BitString checks = lane_checks(work.blocks, code, lanes);
   checks ^= work.record.checks;
-  syndrome ^= work.record.syndrome;
-  former.scatter(syndrome, lanes, difference);
+  work.difference = work.rows;
+  former.to_public_rows(work.difference, lanes);
+  former.subtract(work.record.syndrome, lanes, work.difference);
 
-  KeyWords error_rows(difference.size());
-  decoder.decode({lanes, difference, checks.words()}, error_rows);
-  for (std::size_t i = 0; i < error_rows.size(); ++i) work.rows[i] ^= error_rows[i];
-  work.corrected = rows_as_blocks(work.rows, cut, work.batch);
-  work.errors = rows_as_blocks(error_rows, cut, work.batch);
-
+  work.error_rows.resize(work.rows.size());
+  decoder.decode({lanes, work.difference, checks.words()}, work.error_rows);
+  rows_as_blocks(work.error_rows, cut, work.batch, work.errors);
   checks ^= lane_checks(work.errors, code, lanes);
-  work.lane_agrees = BitString(lanes);
-  for (unsigned lane = 0; lane < lanes; ++lane) {
-    bool agrees = true;
-    for (unsigned t = 0; t < code.check_bits; ++t) {
-      agrees = agrees && !checks[std::size_t{t} * lanes + lane];
-    }
-    work.lane_agrees.set(lane, agrees);
-  }
+  work.lane_agrees = lanes_without_ones(checks, lanes);
+  work.lane_errors.resize(lanes);
+  count_errors(work.errors, cut.block_length().bits(), work.lane_errors);
+  for (std::size_t i = 0; i < work.blocks.size(); ++i) work.blocks[i] ^= work.errors[i];
+  pack_blocks(work.blocks, cut, work.batch, work.packed);
+  work.counts = {};
   const auto failed = static_cast<unsigned>(lanes - work.lane_agrees.count());
   if (failed == 0) return;
-  clear_lanes(work.lane_agrees, difference);
-  work.counts = counter.count(difference, lanes, failed);
+  clear_lanes(work.lane_agrees, work.difference);
+  work.counts = counter.count(work.difference, lanes, failed);
 }
 
 // Tags accepted blocks group by group while they come by in ascending order.
@@ -158,18 +182,19 @@ void hand_on(const ReconcileWork& work, const Cut& cut, const ReconcileSinks& si
   const std::size_t bits = cut.block_length().bits();
   for (unsigned lane = 0; lane < work.batch.lanes; ++lane) {
     const std::uint64_t number = work.batch.first_block + lane;
-    KeyWords block = block_words(work.corrected, cut, lane);
-    const KeyWords pattern = block_words(work.errors, cut, lane);
     if (work.lane_agrees[lane]) {
-      KeyBytes packed(bytes_for(bits));
-      pack_bits(block, bits, packed);
+      const Span<const std::uint8_t> packed = packed_block(work.packed, cut, lane);
       tagger.add(number, packed);
-      if (sinks.provisional != nullptr) sinks.provisional->write(block, bits);
-      const std::size_t errors = count_ones(pattern);
-      summary.errors[number] = static_cast<std::uint32_t>(errors);
-      summary.errors_corrected += errors;
+      if (sinks.provisional != nullptr) sinks.provisional->write_packed(packed);
+      summary.errors[number] = work.lane_errors[lane];
+      summary.errors_corrected += work.lane_errors[lane];
       summary.receipt.accepted.set(number, true);
     } else if (sinks.failed != nullptr) {
+      // As it was received: the pattern that was found is taken off again.
+      KeyWords block(words_for(bits));
+      KeyWords pattern(block.size());
+      copy_bits(work.blocks, bits * lane, block, 0, bits);
+      copy_bits(work.errors, bits * lane, pattern, 0, bits);
       for (std::size_t i = 0; i < block.size(); ++i) block[i] ^= pattern[i];
       sinks.failed->write(block, bits);
     }
@@ -244,8 +269,9 @@ ReconcileSummary reconcile(const Design& design, const BatchDecoder& decoder, co
   DifferenceCounts counts;
   run_batches<ReconcileWork>(
       cut, control,
-      [&](const Batch& batch) {
-        return ReconcileWork{batch, reader.next(), read_rows(key, cut, batch), {}, {}, {}, {}};
+      [&](const Batch& batch, ReconcileWork& work) {
+        work.record = reader.next();
+        read_rows(key, cut, batch, work.rows);
       },
       [&](ReconcileWork& work) { reconcile_batch(former, counter, code, decoder, cut, work); },
       [&](ReconcileWork& work) {

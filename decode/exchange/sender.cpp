@@ -16,28 +16,32 @@ namespace {
 struct MessageWork {
   Batch batch;
   KeyWords rows;
+  KeyWords blocks;
   MessageRecord record;
 };
 
 struct BlocksWork {
   Batch batch;
+  KeyWords rows;
   KeyWords blocks;
+  KeyBytes packed;
 };
 
-// Calls visit(block number, words of the block) for every accepted block in ascending order.
+// Calls visit(block number, packed block) for every accepted block in ascending order.
 template <typename Visit>
 void for_accepted_blocks(const KeySource& key, const Cut& cut, const BitString& accepted,
                          const RunControl& control, Visit&& visit) {
   run_batches<BlocksWork>(
       cut, control,
-      [&](const Batch& batch) {
-        return BlocksWork{batch, read_rows(key, cut, batch)};
+      [&](const Batch& batch, BlocksWork& work) { read_rows(key, cut, batch, work.rows); },
+      [&](BlocksWork& work) {
+        rows_as_blocks(work.rows, cut, work.batch, work.blocks);
+        pack_blocks(work.blocks, cut, work.batch, work.packed);
       },
-      [&](BlocksWork& work) { work.blocks = rows_as_blocks(work.blocks, cut, work.batch); },
       [&](BlocksWork& work) {
         for (unsigned lane = 0; lane < work.batch.lanes; ++lane) {
           const std::uint64_t number = work.batch.first_block + lane;
-          if (accepted[number]) visit(number, block_words(work.blocks, cut, lane));
+          if (accepted[number]) visit(number, packed_block(work.packed, cut, lane));
         }
       });
 }
@@ -45,18 +49,15 @@ void for_accepted_blocks(const KeySource& key, const Cut& cut, const BitString& 
 // Which groups' tags agree with the sender's own blocks.
 BitString agreeing_groups(const KeySource& key, const Cut& cut, const Receipt& receipt,
                           const RunControl& control) {
-  const std::size_t bits = cut.block_length().bits();
   BitString agree(receipt.groups.size());
   std::size_t group = 0;
   std::uint64_t seen = 0;
   std::optional<TagHasher> hasher;
   for_accepted_blocks(key, cut, receipt.accepted, control,
-                      [&](std::uint64_t, const KeyWords& block) {
+                      [&](std::uint64_t, Span<const std::uint8_t> block) {
                         const Group& current = receipt.groups[group];
                         if (seen == 0) hasher.emplace(current.hash_key);
-                        KeyBytes packed(bytes_for(bits));
-                        pack_bits(block, bits, packed);
-                        hasher->update(packed);
+                        hasher->update(block);
                         if (++seen == current.accepted) {
                           agree.set(group, tags_equal(hasher->finish(), current.tag));
                           ++group;
@@ -126,12 +127,10 @@ MessageSummary make_message(const Code& code, const KeySource& key, const Messag
   MessageWriter writer(out, header);
   run_batches<MessageWork>(
       cut, control,
-      [&](const Batch& batch) {
-        return MessageWork{batch, read_rows(key, cut, batch), {}};
-      },
+      [&](const Batch& batch, MessageWork& work) { read_rows(key, cut, batch, work.rows); },
       [&](MessageWork& work) {
-        const KeyWords blocks = rows_as_blocks(work.rows, cut, work.batch);
-        work.record.checks = lane_checks(blocks, code, work.batch.lanes);
+        rows_as_blocks(work.rows, cut, work.batch, work.blocks);
+        work.record.checks = lane_checks(work.blocks, code, work.batch.lanes);
         former.to_public_rows(work.rows, work.batch.lanes);
         work.record.syndrome = former.gather(work.rows, work.batch.lanes);
       },
@@ -163,8 +162,9 @@ SettleSummary settle(const Code& code, const KeySource& key, ByteSource& message
   verdict.receipt = sha256(receipt_text);
   // Two passes over the key, so that no group has to wait in memory for its tag.
   verdict.group_kept = agreeing_groups(key, cut, receipt, RunControl{{}, control.stop});
-  for_accepted_blocks(key, cut, kept_blocks(receipt, verdict.group_kept), control,
-                      [&](std::uint64_t, const KeyWords& block) { settled.write(block, bits); });
+  for_accepted_blocks(
+      key, cut, kept_blocks(receipt, verdict.group_kept), control,
+      [&](std::uint64_t, Span<const std::uint8_t> block) { settled.write_packed(block); });
   settled.finish();
 
   summary.blocks = cut.block_count();

@@ -3,7 +3,9 @@
 #include <gtest/gtest.h>
 
 #include <stdexcept>
+#include <string>
 
+#include "polar/simd.h"
 #include "tests/support/random_bits.h"
 
 namespace frostline {
@@ -38,6 +40,33 @@ TEST(Lanes, BitIBPlusLOfRowsIsBitLNPlusIOfBlocks) {
       ASSERT_EQ(back, rows) << "N = " << length.bits() << ", " << lanes << " lanes";
     }
   }
+}
+
+// What each vector set makes of a batch equals what the plainest does, at the lengths where groups
+// of rows begin to go side by side.
+TEST(Lanes, AllVectorSetsGiveTheSameBits) {
+  Generator generator(2);
+  for (const unsigned log2 : {8U, 9U, 10U, 13U}) {
+    const BlockLength length = BlockLength::from_log2(log2);
+    for (unsigned lanes = 1; lanes <= 512; lanes *= 2) {
+      const std::size_t bits = length.bits() * lanes;
+      const BitString rows = testing::random_bits(generator, bits);
+      for (const std::string& name : simd_names()) {
+        force_simd(name);
+        BitString blocks(bits);
+        lanes_to_blocks(rows.words(), length, lanes, blocks.words());
+        for (std::size_t k = 0; k < 200; ++k) {
+          const std::size_t i = generator() % length.bits();
+          const std::size_t l = generator() % lanes;
+          ASSERT_EQ(blocks[l * length.bits() + i], rows[i * lanes + l]) << name;
+        }
+        BitString back(bits);
+        blocks_to_lanes(blocks.words(), length, lanes, back.words());
+        ASSERT_EQ(back, rows) << name << ", N = " << length.bits() << ", " << lanes << " lanes";
+      }
+    }
+  }
+  reset_simd();
 }
 
 TEST(Lanes, OtherNumbersOfLanesAndOtherSizesAreRejected) {
