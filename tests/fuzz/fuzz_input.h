@@ -38,6 +38,10 @@ class FuzzInput {
     return bits;
   }
 
+  // What has not been taken yet.
+  std::size_t left() const { return left_; }
+  const std::uint8_t* rest() const { return data_; }
+
  private:
   const std::uint8_t* data_;
   std::size_t left_;
@@ -46,7 +50,7 @@ class FuzzInput {
 // Ends the run with a message: the fuzzer keeps the input.
 inline void require(bool holds, const char* what) {
   if (holds) return;
-  std::fprintf(stderr, "broken: %s\n", what);
+  std::fprintf(stderr, "broken promise: %s\n", what);
   std::abort();
 }
 

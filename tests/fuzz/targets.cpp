@@ -1,8 +1,6 @@
 #include "tests/fuzz/targets.h"
 
 #include <algorithm>
-#include <cstdio>
-#include <cstdlib>
 #include <string>
 #include <string_view>
 
@@ -13,20 +11,14 @@
 #include "polar/design.h"
 #include "polar/error.h"
 #include "polar/simd.h"
-#include "tests/fuzz/input.h"
+#include "tests/fuzz/fuzz_input.h"
 #include "tests/support/random_bits.h"
 
 namespace frostline::fuzz {
 namespace {
 
-void require(bool kept, const char* promise) {
-  if (kept) return;
-  std::fprintf(stderr, "broken promise: %s\n", promise);
-  std::abort();
-}
-
 // Runs of frozen and open indices, or single ones, as the input says.
-FrozenSet frozen_set(Input& input, BlockLength block_length) {
+FrozenSet frozen_set(FuzzInput& input, BlockLength block_length) {
   BitString mask(block_length.bits());
   for (std::size_t i = 0; i < mask.size();) {
     const unsigned choice = input.byte();
@@ -44,7 +36,7 @@ FrozenSet frozen_set(Input& input, BlockLength block_length) {
 }
 
 // Difference bits at the frozen indices.
-KeyWords difference_of(Input& input, const FrozenSet& frozen, unsigned lanes) {
+KeyWords difference_of(FuzzInput& input, const FrozenSet& frozen, unsigned lanes) {
   KeyWords rows(words_for(frozen.block_length().bits() * lanes));
   for (const FrozenSet::Run& run : frozen.runs()) {
     BitString bits(std::size_t{run.count} * lanes);
@@ -72,7 +64,7 @@ bool reads(Read&& read) {
 }  // namespace
 
 void lane_decoder(const std::uint8_t* data, std::size_t size) {
-  Input input(data, size);
+  FuzzInput input(data, size);
   const unsigned log2 = 3 + input.below(9);
   unsigned lanes = 1U << input.below(10);
   while ((std::size_t{lanes} << log2) > (std::size_t{1} << 14)) lanes /= 2;
@@ -106,7 +98,7 @@ void design_file(const std::uint8_t* data, std::size_t size) {
 // The first byte says whether the bytes are a message, or where to alter one that is whole.
 void message(const std::uint8_t* data, std::size_t size) {
   const Code code{testing::weight_frozen_set(BlockLength(64), 20), Precoding::none, 8};
-  Input input(data, size);
+  FuzzInput input(data, size);
   const bool whole = (input.byte() & 1U) != 0;
   MemorySink sink;
   if (whole) {
@@ -128,9 +120,9 @@ void message(const std::uint8_t* data, std::size_t size) {
   }
   KeyBytes bytes = sink.bytes();
   unsigned input_changes = 0;
-  while (whole && input.left() >= 3) {
+  while (whole && input.left() >= 9) {
     ++input_changes;
-    const std::size_t place = input.below(static_cast<unsigned>(bytes.size()));
+    const std::size_t place = input.word() % bytes.size();
     const std::uint8_t change = input.byte();
     bytes[place] = static_cast<std::uint8_t>(bytes[place] ^ change);
   }
