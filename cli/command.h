@@ -30,6 +30,7 @@ int run_reconcile(const std::vector<std::string>& arguments);
 int run_trial(const std::vector<std::string>& arguments);
 int run_settle(const std::vector<std::string>& arguments);
 int run_export(const std::vector<std::string>& arguments);
+int run_vectors(const std::vector<std::string>& arguments);
 int run_confirm(const std::vector<std::string>& arguments);
 
 }  // namespace frostline::cli

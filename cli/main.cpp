@@ -21,6 +21,8 @@ constexpr Command kCommands[] = {
     {"inspect", "check a design file and describe it", run_inspect},
     {"limits", "what no one-way code can beat at a block length, QBER and FER", run_limits},
     {"export", "write a design for hardware, firmware and scripts", run_export},
+    {"vectors", "make golden test vectors for hardware, and check answers against them",
+     run_vectors},
     {"sample", "make a pair of strings that differ with a given QBER, for demos and tests",
      run_sample},
     {"trial", "run a design against random errors and count the blocks that fail", run_trial},
