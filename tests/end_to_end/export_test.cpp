@@ -7,6 +7,7 @@
 
 #include "decode/hardware/index_order.h"
 #include "polar/design.h"
+#include "polar/design_json.h"
 #include "polar/random.h"
 #include "polar/syndrome.h"
 #include "tests/end_to_end/run_command.h"
@@ -206,6 +207,37 @@ TEST(ExportedHeader, GivesFirmwareTheSyndrome) {
             << precoding << ' ' << order;
       }
     }
+  }
+}
+
+// The model's figures of inspect are those of the formulas (tests/outside/hardware_cost_test.cpp),
+// and the rows of a schedule add up to them.
+TEST(ExportedSchedule, AddsUpToWhatInspectTells) {
+  const Folder folder;
+  must(folder, {"design", "--block-length", "1024", "--qber", "0.05", "--fer", "0.1", "--list", "4",
+                "-o", "d.json", "--quiet"});
+  for (const std::string elements : {"8", "64"}) {
+    const Arguments setup = {"--processing-elements", elements};
+    const CommandResult inspect =
+        run_command(folder, Arguments{"inspect", "d.json", "--json", "--clock-mhz", "100"} + setup);
+    ASSERT_EQ(inspect.status, 0) << inspect.err;
+    const Json hardware = Json::parse(inspect.out)["hardware"];
+    const auto open = 1024 - Json::parse(folder.read("d.json"))["frozen_count"].get<unsigned>();
+    EXPECT_EQ(hardware["plain"]["cycles"], (elements == "64" ? 2080U : 2688U) + open);
+    EXPECT_EQ(hardware["memory_bits"]["internal_llr"], 4U * 1023 * 4);
+    EXPECT_EQ(hardware["comparators"], 28);
+    const double cycles = hardware["pruned"]["cycles"].get<double>();
+    EXPECT_DOUBLE_EQ(hardware["pruned"]["latency_us"].get<double>(), cycles / 100);
+    must(folder,
+         Arguments{"export", "d.json", "--as", "schedule", "-o", "s.csv", "--quiet"} + setup);
+    EXPECT_EQ(run_tool(folder, "awk -F, '!/^#/ { sum += $7 } END { print sum }' s.csv").out,
+              hardware["pruned"]["cycles"].dump() + "\n");
+    unsigned visited = 0;
+    for (const auto& sizes : hardware["nodes"]) {
+      for (const auto& count : sizes) visited += count.get<unsigned>();
+    }
+    EXPECT_EQ(run_tool(folder, "grep -v '^#' s.csv | tail -n +2 | wc -l").out,
+              std::to_string(visited) + "\n");
   }
 }
 

@@ -10,22 +10,21 @@ end entity;
 architecture bench of read_package is
 begin
   process
-    variable row : line;
+    variable digits : string(1 to N);
   begin
-    write(row, integer'image(N) & " " & integer'image(M) & " " & integer'image(BIT_REVERSED));
-    writeline(output, row);
+    write(output, integer'image(N) & " " & integer'image(M) & " " & integer'image(BIT_REVERSED) & LF);
     for element in frozen_mask'range loop
       if frozen_mask(element) = '1' then
-        write(row, character'('1'));
+        digits(element + 1) := '1';
       else
-        write(row, character'('0'));
+        digits(element + 1) := '0';
       end if;
     end loop;
-    writeline(output, row);
+    write(output, digits & LF);
     for t in frozen_index'range loop
-      write(row, integer'image(frozen_index(t)) & " ");
+      write(output, integer'image(frozen_index(t)) & " ");
     end loop;
-    writeline(output, row);
+    write(output, (1 => LF));
     wait;
   end process;
 end architecture;
