@@ -77,6 +77,8 @@ std::vector<Constant> constants(const ExportRequest& request) {
   }
   list.push_back({"BIT_REVERSED", request.order == IndexOrder::bit_reversed ? 1U : 0U,
                   "1: elements are in bit-reversed order"});
+  list.push_back({"STATE8", request.design.code.precoding == Precoding::state8 ? 1U : 0U,
+                  "1: frozen bits are precoded"});
   list.push_back({"CHECK_BITS", design.code.check_bits, "width of the CRC over x"});
   if (design.code.check_bits > 0) {
     list.push_back(

@@ -17,6 +17,9 @@ module golden_bench;
   sc_decoder decoder ();
 
   initial begin
+`ifndef STATE8
+    if (STATE8 != 0) $fatal(1, "the package is precoded: define the macro STATE8");
+`endif
     if (!$value$plusargs("vectors=%s", folder)) $fatal(1, "+vectors=FOLDER is missing");
     if (!$value$plusargs("answers=%s", answers_file)) $fatal(1, "+answers=FILE is missing");
     $readmemh({folder, "/sender-key.hex"}, sender_key);

@@ -10,7 +10,7 @@
 //   g below a node of constant messages: magnitude 1 - bit, positive.
 //   An open index decides its sign bit; an open u_0 decides 0.
 //
-// Three macros break one rule each, for the test that golden vectors catch it: ZERO_IS_POSITIVE,
+// Macro STATE8: frozen bits are precoded. Three macros break one rule each, for the test that golden vectors catch it: ZERO_IS_POSITIVE,
 // WRAPS, REVERSED_INDICES.
 module sc_decoder;
   import frostline_pkg::*;
@@ -23,6 +23,8 @@ module sc_decoder;
   reg sum[0:N-1];  // partial sums; of the whole block in the end: the error pattern
   reg [0:N-1] errors;
   reg [0:N-1] decisions;
+
+`include "state8.svh"
 
   function [W:0] f(input [W:0] a, input [W:0] b);
     f = {a[W] ^ b[W], a[W-1:0] < b[W-1:0] ? a[W-1:0] : b[W-1:0]};
@@ -88,6 +90,7 @@ module sc_decoder;
   task decode(input [0:M-1] difference);
     integer i, j, t, level, first;
     begin
+      begin_state;
       t = 0;
       for (i = 0; i < N; i = i + 1) begin
         if (i > 0) begin
@@ -97,12 +100,13 @@ module sc_decoder;
           make_left(level);
         end
         if (is_frozen(i)) begin
-          u[i] = difference[t];
+          u[i] = difference[t] ^ offset(i);
           t = t + 1;
         end else u[i] = i == 0 ? 1'b0 : message[0][W];
 `ifdef REVERSED_INDICES
         if (u[i] === 1'bx) u[i] = 1'b0;
 `endif
+        pass(i, is_frozen(i) ? 1'b0 : u[i]);
         sum[i] = u[i];
         level = 0;  // nodes that end at i: left + right beside right
         while (level < LOG2_N && ((i >> level) & 1) == 1) begin

@@ -1,10 +1,12 @@
 // Forms the syndrome of one block, as the sender does. Reads nothing but the exported package.
-// Without precoding; elements in natural or bit-reversed order, as the package says.
+// Elements in natural or bit-reversed order, as the package says; macro STATE8: precoded.
 module syndrome_former;
   import frostline_pkg::*;
 
   reg u[0:N-1];
   reg [0:M-1] syndrome;
+
+`include "state8.svh"
 
   // x: bit i is position i of the block.
   task form(input [0:N-1] x);
@@ -14,7 +16,14 @@ module syndrome_former;
       for (distance = 1; distance < N; distance = 2 * distance)
         for (first = 0; first < N; first = first + 2 * distance)
           for (j = first; j < first + distance; j = j + 1) u[j] = u[j] ^ u[j + distance];
-      for (t = 0; t < M; t = t + 1) syndrome[t] = u[frozen_index[LOG2_N*t +: LOG2_N]];
+      begin_state;
+      t = 0;
+      for (i = 0; i < N; i = i + 1)
+        if (frozen_mask[element(i)]) begin
+          syndrome[t] = u[frozen_index[LOG2_N*t +: LOG2_N]] ^ offset(i);
+          t = t + 1;
+          pass(i, 1'b0);
+        end else pass(i, u[element(i)]);
     end
   endtask
 
