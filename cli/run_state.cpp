@@ -57,9 +57,10 @@ void RunState::show(std::uint64_t done, std::uint64_t total) {
   const double rate = elapsed > 0 ? static_cast<double>(done) / elapsed : 0;
   const double left = rate > 0 ? static_cast<double>(total - done) / rate : 0;
   const bool of_key = bits_per_block_ > 0;
-  std::fprintf(stderr, "\r%s: %llu of %llu %s, %.1f %s, %.0f s left\033[K", label_.c_str(),
+  const std::string detail = detail_ ? ", " + detail_() : "";
+  std::fprintf(stderr, "\r%s: %llu of %llu %s%s, %.1f %s, %.0f s left\033[K", label_.c_str(),
                static_cast<unsigned long long>(done), static_cast<unsigned long long>(total),
-               unit_.c_str(), of_key ? rate * bits_per_block_ / 1e6 : rate,
+               unit_.c_str(), detail.c_str(), of_key ? rate * bits_per_block_ / 1e6 : rate,
                of_key ? "Mbit/s" : "a second", left);
   std::fflush(stderr);
 }

@@ -2,6 +2,7 @@
 #pragma once
 
 #include <chrono>
+#include <functional>
 #include <string>
 
 #include "decode/exchange/run_control.h"
@@ -21,6 +22,8 @@ class RunState {
 
   RunControl control();
   double seconds() const;
+  // What the progress line tells besides, asked for anew each time it is shown.
+  void tell(std::function<std::string()> detail) { detail_ = std::move(detail); }
 
  private:
   void show(std::uint64_t done, std::uint64_t total);
@@ -28,6 +31,7 @@ class RunState {
   std::string label_;
   double bits_per_block_;
   std::string unit_;
+  std::function<std::string()> detail_;
   bool shows_;
   bool shown_ = false;
   std::chrono::steady_clock::time_point start_;
