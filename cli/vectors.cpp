@@ -27,7 +27,9 @@ Options make_options() {
       .value("arithmetic", "A", "planes:W or integer:Q:A (the design's)")
       .value("list", "L", "list size, a power of two from 1 to 128 (the design's)")
       .flag("messages", "write the messages of all levels for blocks above 256 bits too; SC only")
-      .value("check", "DIR", "compare answers with the vectors in DIR; see vectors --check --help")
+      .value("check", "DIR", "in place of FILE: compare answers with the vectors in DIR")
+      .value("answers", "FILE", "with --check: a word a case, as $writememh writes them")
+      .value("answer-messages", "DIR", "with --check: messages-level-K.hex that hardware made")
       .computing()
       .epilogue(
           "Examples:\n"
@@ -94,6 +96,9 @@ int run_vectors(const std::vector<std::string>& arguments) {
   if (asks("--check")) return run_vectors_check(arguments);
   Options options = make_options();
   if (!options.parse(arguments)) return kDone;
+  for (const char* option : {"answers", "answer-messages"}) {
+    if (options.has(option)) throw InputError("--" + std::string(option) + " goes with --check");
+  }
   const std::uint64_t count = chosen_count(options);
   const std::string folder = options.text("output");
   const Design design = read_design(options.text("FILE"));

@@ -174,6 +174,7 @@ TEST_F(BadInput, UsageIsToldInTheProgramsWords) {
       {{"vectors", "d.json", "-o", "out", "--list", "3"}, "--list"},
       {{"vectors", "d.json", "-o", "out", "--list", "4", "--messages"}, "--messages"},
       {{"vectors", "d.json", "-o", "a/out"}, "cannot make folder 'a/out'"},
+      {{"vectors", "d.json", "-o", "out", "--answers", "a"}, "--answers goes with --check"},
       {{"vectors", "--check", "folder"}, "missing --answers FILE"},
       {{"vectors", "--check", "folder", "--answers", "a"}, "manifest.json"},
       {{"export", "d.json", "-o", "out"}, "missing --as FORMAT"},
