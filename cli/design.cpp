@@ -2,6 +2,7 @@
 #include <iostream>
 
 #include "cli/account.h"
+#include "cli/calibrated_design.h"
 #include "cli/command.h"
 #include "cli/design_file.h"
 #include "cli/design_options.h"
@@ -30,6 +31,7 @@ Options make_options() {
   options.value("construction", "NAME",
                 "how indices are ranked: " + construction_list() + "; genie-trial");
   add_genie_options(options);
+  add_calibration_options(options);
   options.flag("reveal-order", "list the open indices in the file, most likely to fail first")
       .value("output,o", "FILE", "the design file")
       .computing()
@@ -88,10 +90,12 @@ Parameters asked(const Options& options) {
   return parameters;
 }
 
-Designed design_as_asked(const Options& options) {
+// calibrated: receives what --by trial spent, where it was asked for.
+Designed design_as_asked(const Options& options, std::optional<CalibratedDesign>& calibrated) {
   const BlockLength block_length(options.whole("block-length"));
   const double qber = options.number("qber");
   const std::string goal = goal_name(options);
+  const bool by_trial = asks_for_calibration(options);
   const bool by_genie_trial = asks_for_genie_trial(options);
   const Arithmetic arithmetic = arithmetic_option(options);
   CodeOptions code =
@@ -114,6 +118,10 @@ Designed design_as_asked(const Options& options) {
   }
   const Ranking ranking = rank_indices(block_length, qber, construction_option(options, arithmetic),
                                        order_alpha_option(options), arithmetic);
+  if (by_trial) {
+    calibrated = calibrated_design(options, ranking, code, asked(options));
+    return {calibrated->design, std::nullopt};
+  }
   return make_design(ranking, wanted, code, asked(options));
 }
 
@@ -159,7 +167,8 @@ int run_design(const std::vector<std::string>& arguments) {
   std::vector<std::string> inputs;
   if (options.has("mask")) inputs.push_back(options.text("mask"));
   require_distinct_files(inputs, {path});
-  const Designed designed = design_as_asked(options);
+  std::optional<CalibratedDesign> calibrated;
+  const Designed designed = design_as_asked(options, calibrated);
   if (designed.net_key_rate && *designed.net_key_rate <= 0) {
     return report_no_key(options, *designed.net_key_rate);
   }
@@ -170,8 +179,10 @@ int run_design(const std::vector<std::string>& arguments) {
     Json summary = design_summary(designed.design);
     summary["file"] = path;
     if (designed.net_key_rate) summary["net_key_rate"] = *designed.net_key_rate;
+    if (calibrated) summary["calibration"] = spent_json(*calibrated);
     std::cout << summary.dump(2) << '\n';
   } else if (!options.quiet()) {
+    if (calibrated) options.account() << spent_sentence(*calibrated);
     print_account(options.account(), designed, path);
   }
   return kDone;

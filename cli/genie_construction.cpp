@@ -17,13 +17,14 @@ constexpr std::uint64_t kDefaultSeed = 1;
 
 void add_genie_options(Options& options) {
   options.value("trial-blocks", "B", "blocks of the genie-trial construction (10000)")
-      .value("seed", "S", "of the genie-trial construction: the same seed, the same design (1)");
+      .value("seed", "S", "of genie-trial and of --by trial: the same seed, the same design (1)");
 }
 
 bool asks_for_genie_trial(const Options& options) {
   const bool asked = options.optional_text("construction") == kName;
   for (const char* own : {"trial-blocks", "seed"}) {
-    if (options.has(own) && !asked) {
+    const bool calibrates = own == std::string("seed") && options.optional_text("by") == "trial";
+    if (options.has(own) && !asked && !calibrates) {
       throw InputError(std::string("design: --") + own + " goes with --construction genie-trial");
     }
   }
