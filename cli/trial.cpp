@@ -11,6 +11,7 @@
 #include "cli/options.h"
 #include "cli/run_state.h"
 #include "cli/trial_account.h"
+#include "cli/trial_curve.h"
 #include "decode/batch_decoder.h"
 #include "decode/exchange/streams.h"
 #include "decode/trial/campaign.h"
@@ -22,6 +23,7 @@ namespace {
 
 constexpr std::uint64_t kDefaultBlocks = 1000000;
 constexpr std::uint64_t kDefaultFailures = 100;
+constexpr std::uint64_t kDefaultCurveBlocks = 10000;
 // Between two writings of the checkpoint.
 constexpr double kCheckpointSeconds = 10;
 // The look at one block alone.
@@ -49,17 +51,19 @@ Options make_options() {
       .value("phase-error", "E", "for the net key (the channel's mean QBER)")
       .value("checkpoint", "FILE", "keeps the counts in FILE, and goes on from there where it is")
       .value("shard", "I/K", "the I-th of K disjoint parts of the --blocks")
-      .values("merge", "FILES", "adds up the checkpoints of all K shards instead of a run")
-      .computing()
-      .epilogue(
-          "Example: is the predicted FER what the decoder does?\n"
-          "  frostline trial fibre.design.json --blocks 100000\n"
-          "On a link with bursts, with a small list first and a large one for what it leaves:\n"
-          "  frostline trial fibre.design.json --channel burst:0.01:0.1:0.0001:0.001 --list 8,32\n"
-          "Two parts on two machines, and their sum:\n"
-          "  frostline trial d.json --blocks 1000000 --shard 1/2 --checkpoint part1.json\n"
-          "  frostline trial d.json --blocks 1000000 --shard 2/2 --checkpoint part2.json\n"
-          "  frostline trial d.json --merge part1.json part2.json\n");
+      .values("merge", "FILES", "adds up the checkpoints of all K shards instead of a run");
+  add_curve_options(options);
+  options.computing().epilogue(
+      "Example: is the predicted FER what the decoder does?\n"
+      "  frostline trial fibre.design.json --blocks 100000\n"
+      "On a link with bursts, with a small list first and a large one for what it leaves:\n"
+      "  frostline trial fibre.design.json --channel burst:0.01:0.1:0.0001:0.001 --list 8,32\n"
+      "How many public bits for which FER, and what would reveals cost?\n"
+      "  frostline trial fibre.design.json --curve fibre.csv --plot fibre.svg\n"
+      "Two parts on two machines, and their sum:\n"
+      "  frostline trial d.json --blocks 1000000 --shard 1/2 --checkpoint part1.json\n"
+      "  frostline trial d.json --blocks 1000000 --shard 2/2 --checkpoint part2.json\n"
+      "  frostline trial d.json --merge part1.json part2.json\n");
   return options;
 }
 
@@ -100,7 +104,11 @@ TrialOptions trial_options(const Options& options) {
   trial.failures = options.optional_whole("failures");
   const bool stop_given =
       options.has("blocks") || options.has("failures") || options.has("seconds");
-  if (!stop_given) trial.failures = kDefaultFailures;
+  if (!stop_given && options.has("curve")) {
+    trial.blocks = kDefaultCurveBlocks;
+  } else if (!stop_given) {
+    trial.failures = kDefaultFailures;
+  }
   trial.seed = options.optional_whole("seed").value_or(1);
   if (options.has("lanes")) {
     const std::uint64_t lanes = options.whole("lanes");
@@ -194,6 +202,12 @@ MeasuredTrial measure(const Options& options, Design design) {
           single};
 }
 
+int draw_curve(const Options& options, Design design) {
+  if (options.has("arithmetic")) design.arithmetic = parse_arithmetic(options.text("arithmetic"));
+  require_curve_options(options, decoder_plan(options, design).lists);
+  return run_curve(options, design, *channel_option(options, design), trial_options(options));
+}
+
 MeasuredTrial merge(const Options& options, Design design) {
   for (const char* other : {"qber", "channel", "arithmetic", "list", "lanes", "blocks", "failures",
                             "seconds", "seed", "shard", "key-format", "bits"}) {
@@ -240,6 +254,7 @@ int run_trial(const std::vector<std::string>& arguments) {
     throw InputError("--phase-error is not from 0 to 0.5");
   }
   const Design design = read_design(options.text("FILE"));
+  if (options.has("curve") || options.has("plot")) return draw_curve(options, design);
   const MeasuredTrial trial =
       options.has("merge") ? merge(options, design) : measure(options, design);
   const Expectation expectation = expectation_of(trial);

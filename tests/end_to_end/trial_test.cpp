@@ -6,7 +6,9 @@
 #include <algorithm>
 #include <cmath>
 #include <csignal>
+#include <map>
 #include <nlohmann/json.hpp>
+#include <sstream>
 
 #include "tests/end_to_end/run_command.h"
 
@@ -141,6 +143,39 @@ TEST_F(TrialCommand, EndsByTheClock) {
   EXPECT_GT(trial.at("blocks"), 0);
 }
 
+TEST_F(TrialCommand, CurveGoesThroughTrialsOfOtherFrozenCounts) {
+  const Arguments all = {"--blocks", "3000", "--seed", "3"};
+  const Json curve = measured(all + Arguments{"--curve", "c.csv", "--plot", "c.svg"});
+  EXPECT_EQ(curve.at("failures"), measured(all).at("failures"));
+  EXPECT_NE(folder_.read("c.svg").find("FER of every frozen count"), std::string::npos);
+  std::istringstream csv(folder_.read("c.csv"));
+  std::string line;
+  std::getline(csv, line);
+  EXPECT_EQ(line.rfind("frozen_count,blocks,failures,fer,", 0), 0U) << line;
+  std::map<std::string, int> failures;
+  while (std::getline(csv, line)) {
+    const std::size_t first = line.find(',');
+    failures[line.substr(0, first)] = std::stoi(line.substr(line.find(',', first + 1) + 1));
+  }
+  for (const char* frozen : {"300", "315", "330", "345", "360"}) {
+    ASSERT_EQ(run_command(folder_, {"design", "--block-length", "1024", "--qber", "0.03",
+                                    "--frozen", frozen, "-o", "m.json", "--quiet"})
+                  .status,
+              0);
+    const CommandResult trial =
+        run_command(folder_, {"trial", "m.json", "--json", "--blocks", "3000", "--seed", "3"});
+    ASSERT_EQ(failures.count(frozen), 1U) << frozen;
+    EXPECT_EQ(Json::parse(trial.out).at("failures"), failures[frozen]) << frozen;
+  }
+  // Smaller steps never leak more, and starting where it is best no more than from the design.
+  double last = 0;
+  for (const Json& reveal : curve.at("reveals")) {
+    EXPECT_GE(reveal.at("best_bits"), last);
+    EXPECT_LE(reveal.at("best_bits"), reveal.at("from_design_bits"));
+    last = reveal.at("best_bits");
+  }
+}
+
 TEST_F(TrialCommand, SaysClearlyWhatIsWrong) {
   folder_.write("short.key", "0123");
   folder_.write("long.key", "012345");
@@ -162,6 +197,10 @@ TEST_F(TrialCommand, SaysClearlyWhatIsWrong) {
       {{"trial", "d.json", "--merge", "none.json"}, "cannot read"},
       {{"trial", "d.json", "--merge", "x.json", "--seed", "2"}, "does not go with --merge"},
       {{"trial", "d.json", "--checkpoint", "d.json"}, "d.json"},
+      {{"trial", "d.json", "--plot", "c.svg"}, "--plot goes with --curve"},
+      {{"trial", "d.json", "--curve", "d.json"}, "d.json"},
+      {{"trial", "d.json", "--curve", "c.csv", "--list", "8"}, "list size 1"},
+      {{"trial", "d.json", "--curve", "c.csv", "--failures", "8"}, "does not go with --curve"},
       {{"trial", "d.json", "--phase-error", "0.6"}, "--phase-error"},
       {{"trial", "d.json", "--channel", "bsc:0.1", "--qber", "0.1"}, "only one"},
       {{"trial", "d.json", "--qber", "0.5"}, "0.5"},
