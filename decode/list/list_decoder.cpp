@@ -393,16 +393,17 @@ class ListWalk {
   // The best path of each block whose check bits are the given ones, the best of all where none has
   // them; of equals the lower path.
   void Choose() {
-    alignas(64) std::uint8_t chosen[kR][kRowBytes];
+    std::uint64_t agree[kR] = {};
+    if (survivors_.lists() && program_.check_bits != 0) CompareChecks(agree);
+    alignas(64) std::uint8_t chosen[kR][kRowBytes] = {};
     for (unsigned g = 0; g < kR; ++g) {
       alignas(64) std::uint8_t metric[kRowBytes];
       StoreRow(survivors_.metric[g], metric);
-      const std::uint64_t agrees = survivors_.lists() ? ChecksAgree(g) : 0;
       for (unsigned b = 0; b < blocks_; ++b) {
         unsigned best = b * paths_.list;
         for (unsigned slot = best + 1; slot < (b + 1) * paths_.list; ++slot) {
-          const bool was = (agrees >> best) & 1U;
-          const bool is = (agrees >> slot) & 1U;
+          const bool was = (agree[g] >> best) & 1U;
+          const bool is = (agree[g] >> slot) & 1U;
           if (is != was ? is : metric[slot] < metric[best]) best = slot;
         }
         chosen[g][b] = static_cast<std::uint8_t>(best);
@@ -412,25 +413,38 @@ class ListWalk {
       std::uint8_t* const to = ShownAt(byte);
       for (unsigned g = 0; g < kR; ++g) {
         const std::uint8_t* const row = SumsAt(byte) + g * kRowBytes;
+#if HWY_TARGET == HWY_AVX3_DL
+        const __m512i bytes =
+            _mm512_permutexvar_epi8(_mm512_load_si512(chosen[g]), _mm512_load_si512(row));
+        _mm512_mask_storeu_epi8(to + g * blocks_, ~std::uint64_t{0} >> (kRowBytes - blocks_),
+                                bytes);
+#else
         for (unsigned b = 0; b < blocks_; ++b) to[g * blocks_ + b] = row[chosen[g][b]];
+#endif
       }
     }
   }
 
-  std::uint64_t ChecksAgree(unsigned g) const {
-    if (program_.check_bits == 0) return ~std::uint64_t{0};
+  // agree[g]: bit i for byte i of row g.
+  void CompareChecks(std::uint64_t* agree) const {
     const CheckTables tables(program_.check_bits);
-    CheckRegister check;
-    for (Row& byte : check.byte) byte = Zeros<512>();
+    CheckRegister check[kR];
+    for (unsigned g = 0; g < kR; ++g) {
+      for (Row& byte : check[g].byte) byte = Zeros<512>();
+    }
     for (std::size_t byte = 0; byte < program_.bytes; ++byte) {
-      check.Take(LoadRow(SumsAt(byte) + g * kRowBytes), tables);
+      for (unsigned g = 0; g < kR; ++g) {
+        check[g].Take(LoadRow(SumsAt(byte) + g * kRowBytes), tables);
+      }
     }
-    Row differs = Zeros<512>();
-    for (unsigned k = 0; k < 3; ++k) {
-      const Row given = Expand(checks_ + (k * kR + g) * blocks_, paths_);
-      differs = Or(differs, Xor(given, check.byte[k]));
+    for (unsigned g = 0; g < kR; ++g) {
+      Row differs = Zeros<512>();
+      for (unsigned k = 0; k < 3; ++k) {
+        const Row given = Expand(checks_ + (k * kR + g) * blocks_, paths_);
+        differs = Or(differs, Xor(given, check[g].byte[k]));
+      }
+      agree[g] = MaskBits(IsZero(differs));
     }
-    return MaskBits(IsZero(differs));
   }
 
   const ListProgram& program_;
@@ -480,19 +494,52 @@ HWY_EXPORT(DecodeGroup);
 
 namespace {
 
-// Byte j of block l of `count` blocks from `first` on, to and from byte j count + l of the group.
-void to_group(const std::uint8_t* blocks, std::size_t bytes, std::size_t first, std::size_t present,
-              std::size_t count, std::uint8_t* group) {
-  for (std::size_t l = 0; l < present; ++l) {
-    const std::uint8_t* const block = blocks + (first + l) * bytes;
-    for (std::size_t j = 0; j < bytes; ++j) group[j * count + l] = block[j];
+// Transposes 8 words of 8 bytes: byte b of word a is exchanged with byte a of word b.
+void transpose_bytes(std::uint64_t (&words)[8]) {
+  constexpr std::uint64_t kLower[3] = {0x00FF00FF00FF00FFU, 0x0000FFFF0000FFFFU,
+                                       0x00000000FFFFFFFFU};
+  for (unsigned k = 0; k < 3; ++k) {
+    const unsigned distance = 1U << k;
+    const unsigned shift = 8U << k;
+    for (unsigned i = 0; i < 8; ++i) {
+      if ((i & distance) != 0) continue;
+      const std::uint64_t swapped = ((words[i] >> shift) ^ words[i + distance]) & kLower[k];
+      words[i + distance] ^= swapped;
+      words[i] ^= swapped << shift;
+    }
   }
 }
-void from_group(const std::uint8_t* group, std::size_t bytes, std::size_t first,
-                std::size_t present, std::size_t count, std::uint8_t* blocks) {
-  for (std::size_t l = 0; l < present; ++l) {
-    std::uint8_t* const block = blocks + (first + l) * bytes;
-    for (std::size_t j = 0; j < bytes; ++j) block[j] = group[j * count + l];
+
+// An array of bytes, a block a row, to one of a block a column.
+struct ByteMatrix {
+  std::uint8_t* bytes;
+  std::size_t stride;
+};
+void transpose(const ByteMatrix& from, std::size_t rows, std::size_t columns,
+               const ByteMatrix& to) {
+  for (std::size_t row = 0; row < rows; row += 8) {
+    for (std::size_t column = 0; column < columns; column += 8) {
+      const std::size_t height = std::min<std::size_t>(8, rows - row);
+      const std::size_t width = std::min<std::size_t>(8, columns - column);
+      std::uint64_t words[8] = {};
+      if (height == 8 && width == 8) {
+        for (std::size_t i = 0; i < 8; ++i) {
+          std::memcpy(&words[i], from.bytes + (row + i) * from.stride + column, 8);
+        }
+        transpose_bytes(words);
+        for (std::size_t i = 0; i < 8; ++i) {
+          std::memcpy(to.bytes + (column + i) * to.stride + row, &words[i], 8);
+        }
+        continue;
+      }
+      for (std::size_t i = 0; i < height; ++i) {
+        std::memcpy(&words[i], from.bytes + (row + i) * from.stride + column, width);
+      }
+      transpose_bytes(words);
+      for (std::size_t i = 0; i < width; ++i) {
+        std::memcpy(to.bytes + (column + i) * to.stride + row, &words[i], height);
+      }
+    }
   }
 }
 
@@ -552,14 +599,14 @@ void ListDecoder::decode(const BatchDifference& difference, Span<std::uint64_t> 
   for (std::size_t first = 0; first < lanes; first += count) {
     const std::size_t present = std::min<std::size_t>(count, lanes - first);
     if (present < count) std::fill_n(scratch.data(), shown_bytes, std::uint8_t{0});
-    to_group(block_bytes, bytes, first, present, count, scratch.data());
+    transpose({block_bytes + first * bytes, bytes}, present, bytes, {scratch.data(), count});
     KeyBytes checks(3 * count + 64);
     if (program_.list > 1) {
       checks_to_group(difference, program_.check_bits, first, present, count, checks.data());
     }
     HWY_DYNAMIC_DISPATCH(DecodeGroup)
     (program_, rows, {scratch.data(), checks.data(), scratch.data() + shown_bytes});
-    from_group(scratch.data(), bytes, first, present, count, block_bytes);
+    transpose({scratch.data(), count}, bytes, present, {block_bytes + first * bytes, bytes});
   }
   blocks_to_lanes(blocks, length, lanes, error_rows);
 }

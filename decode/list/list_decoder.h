@@ -44,7 +44,8 @@ class ListDecoder : public BatchDecoder {
   ListDecoder(const Code& code, const Arithmetic& arithmetic, unsigned list,
               const MetricWeights* weights);
 
-  // Memory: at most 80 N bytes a thread, kept for the next batch, and 3 N lanes bits.
+  // Memory: 96 N bytes a thread, or 48 N with fewer than 4 rows of lanes, and N/8 for each block
+  // that is decoded in step; kept for the next batch. Besides, N lanes bits while it decodes.
   void decode(const BatchDifference& difference, Span<std::uint64_t> error_rows) const override;
 
  private:

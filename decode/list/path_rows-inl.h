@@ -318,11 +318,21 @@ HWY_INLINE Row OverBlock(Row row, unsigned first, const PathTables& paths, Opera
   }
   return row;
 }
+// The same where L is known when compiled.
+template <unsigned kLog2, typename Operation>
+HWY_INLINE Row OverPaths(Row row, const PathTables& paths, Operation operation) {
+  if constexpr (kLog2 > 4) {
+    row = OverPaths<4>(row, paths, operation);
+    return operation(row, SwapSixteens(row));
+  } else if constexpr (kLog2 > 0) {
+    row = OverPaths<kLog2 - 1>(row, paths, operation);
+    return operation(row, LookUpInSixteens(row, LoadRow(paths.exchange[kLog2 - 1])));
+  } else {
+    return row;
+  }
+}
 HWY_INLINE Row LeastOfBlock(const Row& row, const PathTables& paths) {
   return OverBlock(row, 0, paths, [](const Row& a, const Row& b) { return Least(a, b); });
-}
-HWY_INLINE Row GreatestOfBlock(const Row& row, const PathTables& paths) {
-  return OverBlock(row, 0, paths, [](const Row& a, const Row& b) { return Greatest(a, b); });
 }
 HWY_INLINE Row SumOfBlock(const Row& row, const PathTables& paths) {
   return OverBlock(row, 0, paths, [](const Row& a, const Row& b) { return Add(a, b); });
