@@ -33,7 +33,9 @@ Options make_options() {
              "QBERs: values and ranges LOW:HIGH:STEP, for example 0.005,0.01:0.11:0.01")
       .value("fers", "LIST", "FER targets, for example 0.1,0.001 (0.1)")
       .value("constructions", "LIST", construction_list());
-  options.value("lists", "LIST", "list sizes of the decoder, powers of two from 1 to 128 (1)");
+  options.value("lists", "LIST",
+                "list sizes of the decoder, powers of two from 1 to 128 (1); with --select the one "
+                "to look for");
   add_code_options(options);
   options.value("output,o", "DIR", "the folder of the designs")
       .values("select", "N P", "print the design in DIR to use at this block length and QBER")
