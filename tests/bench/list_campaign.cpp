@@ -118,12 +118,12 @@ class CrossingPoint {
     slope_ = -std::log(2) / std::max(1.0, half - at_);
   }
 
-  // Short runs until the FER is within a third of the wanted one.
+  // Short runs until the FER is within a factor of 1.6 of the wanted one.
   void approach(std::uint64_t blocks) {
     for (int step = 0; step < 8; ++step) {
       const double off = log_ratio(campaign_.run(count(at_), blocks));
       at_ -= std::clamp(off, -1.5, 1.5) / slope_;
-      if (std::abs(off) < 0.3) return;
+      if (std::abs(off) < 0.45) return;
     }
     throw std::runtime_error("no frozen count near the FER was found");
   }
@@ -184,7 +184,7 @@ class CrossingPoint {
 void measure_efficiency(const Setting& setting, double fer, std::uint64_t blocks) {
   const Campaign campaign(setting);
   CrossingPoint crossing(campaign, setting, fer);
-  crossing.approach(std::max<std::uint64_t>(blocks / 8, 100));
+  crossing.approach(std::max<std::uint64_t>(blocks / 8, 300));
   crossing.bracket(blocks);
   crossing.print(setting);
 }

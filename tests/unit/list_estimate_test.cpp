@@ -69,8 +69,9 @@ TEST(ListEstimate, IsWhatWasMeasured) {
     for (int k = 0; k < 7; ++k) fields >> skipped;
     ASSERT_TRUE(fields >> saving) << line;
     ASSERT_EQ(precoding, "state8");
-    // The table is for FER 0.1; the change with the FER is a mean over lists.
-    const double allowed = fer == 0.1 ? 1e-4 : 0.02;
+    // The table is for FER 0.1; the change with the FER is a mean over lists. Beyond 2^16 not every
+    // row of the table is from here.
+    const double allowed = fer != 0.1 ? 0.02 : bits > 65536 ? 0.01 : 1e-4;
     EXPECT_NEAR(list_saving(setting_of(bits, p, list), fer), saving, allowed) << line;
     ++compared;
   }
