@@ -10,6 +10,7 @@
 #include "decode/lanes/lane_decoder.h"
 #include "decode/reference/reference_batch_decoder.h"
 #include "polar/error.h"
+#include "polar/limits.h"
 
 namespace frostline {
 namespace {
@@ -51,6 +52,10 @@ TEST(Trial, MeasuresBetweenTheWorstIndexAndTheUnion) {
     EXPECT_GE(interval.high, design.largest_leaf);
     EXPECT_LE(interval.low, design.union_sum);
     EXPECT_GT(summary.failures, 0U);
+    // No one-way message of fixed length does better (polar/limits.h: V. Strassen, 1962), check
+    // bits counted, even at the worst FER that the counts leave room for.
+    EXPECT_GE(design.code.leakage_bits(),
+              finite_length_limit(std::uint64_t{1} << log2, p, interval.high).bits);
     // Five standard deviations of the number of errors.
     const double bits = 20000.0 * static_cast<double>(std::size_t{1} << log2);
     EXPECT_NEAR(static_cast<double>(summary.errors), bits * p, 5 * std::sqrt(bits * p * (1 - p)));
