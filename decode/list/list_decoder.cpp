@@ -590,17 +590,20 @@ void ListDecoder::decode(const BatchDifference& difference, Span<std::uint64_t> 
   const std::size_t count = rows * blocks_a_row;
   const std::size_t bytes = program_.bytes;
 
-  KeyBytes& scratch = scratch_.local();
+  Scratch& kept = scratch_.local();
+  KeyBytes& scratch = kept.group;
   const std::size_t shown_bytes = (bytes * count + 127) / 64 * 64;
   scratch.resize(scratch_bytes(bytes, rows) + shown_bytes);
-  KeyWords blocks(words);
+  KeyWords& blocks = kept.blocks;
+  blocks.resize(words);
   lanes_to_blocks(difference.rows, length, lanes, blocks);
   auto* const block_bytes = reinterpret_cast<std::uint8_t*>(blocks.data());
   for (std::size_t first = 0; first < lanes; first += count) {
     const std::size_t present = std::min<std::size_t>(count, lanes - first);
     if (present < count) std::fill_n(scratch.data(), shown_bytes, std::uint8_t{0});
     transpose({block_bytes + first * bytes, bytes}, present, bytes, {scratch.data(), count});
-    KeyBytes checks(3 * count + 64);
+    KeyBytes& checks = kept.checks;
+    checks.assign(3 * count + 64, 0);
     if (program_.list > 1) {
       checks_to_group(difference, program_.check_bits, first, present, count, checks.data());
     }

@@ -45,12 +45,18 @@ class ListDecoder : public BatchDecoder {
               const MetricWeights* weights);
 
   // Memory: 96 N bytes a thread, or 48 N with fewer than 4 rows of lanes, and N/8 for each block
-  // that is decoded in step; kept for the next batch. Besides, N lanes bits while it decodes.
+  // that is decoded in step, and N lanes bits; kept for the next batch.
   void decode(const BatchDifference& difference, Span<std::uint64_t> error_rows) const override;
 
  private:
+  struct Scratch {
+    KeyBytes group;   // messages and sums of the blocks that are decoded in step
+    KeyWords blocks;  // the batch, block after block
+    KeyBytes checks;
+  };
+
   ListProgram program_;
-  mutable tbb::enumerable_thread_specific<KeyBytes> scratch_;
+  mutable tbb::enumerable_thread_specific<Scratch> scratch_;
 };
 
 }  // namespace frostline
