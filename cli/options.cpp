@@ -102,7 +102,7 @@ Options& Options::values(const std::string& name, const std::string& metavar,
 }
 
 Options& Options::computing() {
-  value("threads", "T", "worker threads (all cores)");
+  value("threads", "T", "worker threads; files are read and written by one more (all cores)");
   value("simd", "NAME", "use these vector instructions and nothing above them (best there is)");
   flag("quiet", "no progress line and no account");
   return *this;

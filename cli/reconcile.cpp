@@ -157,7 +157,7 @@ int run_reconcile(const std::vector<std::string>& arguments) {
   std::unique_ptr<FileSink> report;
   if (options.has("report"))
     report = std::make_unique<FileSink>(options.text("report"), FileAccess::secret);
-  FileSink receipt(options.text("receipt"));
+  FileSink receipt(options.text("receipt"), FileAccess::exchanged);
   const ReconcileSummary summary =
       reconcile(design, *decoder, *key, message, reconcile_options, keys.sinks(), state.control());
   const double seconds = state.seconds();

@@ -80,7 +80,7 @@ int run_settle(const std::vector<std::string>& arguments) {
   std::unique_ptr<FileSink> report;
   if (options.has("report"))
     report = std::make_unique<FileSink>(options.text("report"), FileAccess::secret);
-  FileSink verdict(options.text("verdict"));
+  FileSink verdict(options.text("verdict"), FileAccess::exchanged);
   const SettleSummary summary = settle(design.code, *key, message, receipt, options.text("RECEIPT"),
                                        settled, state.control());
   const double seconds = state.seconds();

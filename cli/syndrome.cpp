@@ -30,7 +30,7 @@ Options make_options() {
 
 FileSink open_message(const std::string& path) {
   try {
-    return FileSink(path, FileAccess::normal, FileReplace::refuse_if_there);
+    return FileSink(path, FileAccess::exchanged, FileReplace::refuse_if_there);
   } catch (const InputError& error) {
     throw InputError(std::string(error.what()) +
                      "; send a message that is there again rather than make another");

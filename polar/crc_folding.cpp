@@ -10,7 +10,8 @@
 HWY_BEFORE_NAMESPACE();
 namespace frostline {
 namespace HWY_NAMESPACE {
-#if HWY_TARGET == HWY_SCALAR || HWY_TARGET == HWY_EMU128 || __BYTE_ORDER__ != __ORDER_LITTLE_ENDIAN__
+#if HWY_TARGET == HWY_SCALAR || HWY_TARGET == HWY_EMU128 || \
+    __BYTE_ORDER__ != __ORDER_LITTLE_ENDIAN__
 
 // Emulated multiplications are slower than tables.
 std::size_t Fold(const CrcFolding&, const std::uint8_t*, std::size_t, std::uint64_t,

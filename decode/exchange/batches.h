@@ -8,6 +8,7 @@
 #include <tbb/global_control.h>
 #include <tbb/parallel_pipeline.h>
 
+#include <algorithm>
 #include <condition_variable>
 #include <cstdint>
 #include <deque>
@@ -130,6 +131,15 @@ class BatchExchange {
   std::exception_ptr error_;
 };
 
+// Two for every worker and two for the thread beside them, but no more than hold 2^26 bits in all
+// where that is more than one for each: a batch takes about eight times its bits.
+inline std::size_t batches_in_flight(const Cut& cut, std::size_t workers) {
+  constexpr std::uint64_t kMostBits = std::uint64_t{1} << 26;
+  const std::uint64_t fit = kMostBits / (cut.block_length().bits() * cut.lanes());
+  return static_cast<std::size_t>(
+      std::clamp<std::uint64_t>(fit, workers + 1, std::uint64_t{2} * workers + 2));
+}
+
 // For each batch of the cut in order: read(batch, Work&) fills a Work that may hold what an earlier
 // batch left; work(Work&) runs in parallel; hand_on(Work&) sees them in order. read and hand_on run
 // on one thread, never at the same time. Work has a member `batch`, set before read. Throws
@@ -140,7 +150,7 @@ void run_batches(const Cut& cut, const RunControl& control, Read&& read, Do&& wo
   using Token = typename BatchExchange<Work>::Token;
   const std::size_t workers =
       tbb::global_control::active_value(tbb::global_control::max_allowed_parallelism);
-  BatchExchange<Work> exchange(cut.batch_count(), 2 * workers + 2);
+  BatchExchange<Work> exchange(cut.batch_count(), batches_in_flight(cut, workers));
   std::thread server([&] {
     exchange.serve(
         control,

@@ -46,25 +46,66 @@ void for_accepted_blocks(const KeySource& key, const Cut& cut, const BitString& 
       });
 }
 
-// Which groups' tags agree with the sender's own blocks.
-BitString agreeing_groups(const KeySource& key, const Cut& cut, const Receipt& receipt,
-                          const RunControl& control) {
-  BitString agree(receipt.groups.size());
+// What the sender's first pass over its key finds out.
+struct FirstPass {
+  BitString agree;  // which groups' tags agree with the sender's own blocks
+  Sha256 message;   // digest of the whole message
+};
+
+struct TagsWork {
+  Batch batch;
+  MessageRecord record;
+  KeyWords rows;
+  KeyWords blocks;
+  KeyBytes packed;
+  bool made_of_key = false;
+};
+
+// Reads the message beside the key and makes sure that it was made of it: another key would only
+// show in tags that all disagree, after everything was lost.
+FirstPass check_tags(const Code& code, const KeySource& key, MessageReader& reader,
+                     const std::string& message_name, const Receipt& receipt,
+                     const RunControl& control) {
+  const Cut& cut = reader.cut();
+  const SyndromeFormer former(code.frozen, code.precoding);
+  FirstPass result{BitString(receipt.groups.size()), {}};
   std::size_t group = 0;
   std::uint64_t seen = 0;
   std::optional<TagHasher> hasher;
-  for_accepted_blocks(key, cut, receipt.accepted, control,
-                      [&](std::uint64_t, Span<const std::uint8_t> block) {
-                        const Group& current = receipt.groups[group];
-                        if (seen == 0) hasher.emplace(current.hash_key);
-                        hasher->update(block);
-                        if (++seen == current.accepted) {
-                          agree.set(group, tags_equal(hasher->finish(), current.tag));
-                          ++group;
-                          seen = 0;
-                        }
-                      });
-  return agree;
+  run_batches<TagsWork>(
+      cut, control,
+      [&](const Batch& batch, TagsWork& work) {
+        work.record = reader.next();
+        read_rows(key, cut, batch, work.rows);
+      },
+      [&](TagsWork& work) {
+        rows_as_blocks(work.rows, cut, work.batch, work.blocks);
+        pack_blocks(work.blocks, cut, work.batch, work.packed);
+        work.made_of_key = lane_checks(work.blocks, code, work.batch.lanes) == work.record.checks;
+        former.to_public_rows(work.rows, work.batch.lanes);
+        work.made_of_key =
+            work.made_of_key && former.gather(work.rows, work.batch.lanes) == work.record.syndrome;
+      },
+      [&](TagsWork& work) {
+        if (!work.made_of_key) {
+          throw InputError("message '" + message_name + "' was not made of key '" + key.name() +
+                           "': block " + std::to_string(work.batch.first_block + 1) +
+                           " or one of the next has another syndrome");
+        }
+        for (unsigned lane = 0; lane < work.batch.lanes; ++lane) {
+          if (!receipt.accepted[work.batch.first_block + lane]) continue;
+          const Group& current = receipt.groups[group];
+          if (seen == 0) hasher.emplace(current.hash_key);
+          hasher->update(packed_block(work.packed, cut, lane));
+          if (++seen == current.accepted) {
+            result.agree.set(group, tags_equal(hasher->finish(), current.tag));
+            ++group;
+            seen = 0;
+          }
+        }
+      });
+  result.message = reader.finish();
+  return result;
 }
 
 // Accepted blocks of the groups that are kept.
@@ -78,17 +119,14 @@ BitString kept_blocks(const Receipt& receipt, const BitString& group_kept) {
   return kept;
 }
 
-// Reads the message to its end, so that it is known to be whole, and gives its digest.
-Sha256 read_through(MessageReader& reader) {
-  for (std::uint64_t i = 0; i < reader.cut().batch_count(); ++i) reader.next();
-  return reader.finish();
+[[noreturn]] void fail_other_message(const std::string& name) {
+  throw InputError("receipt '" + name + "' answers another message");
 }
 
-void require_belongs(const Receipt& receipt, const MessageReader& reader, const Sha256& message,
-                     const Code& code, const std::string& name) {
-  if (receipt.message != message || receipt.session != reader.header().session) {
-    throw InputError("receipt '" + name + "' answers another message");
-  }
+// All but the message's digest, which is known at its end only.
+void require_belongs(const Receipt& receipt, const MessageReader& reader, const Code& code,
+                     const std::string& name) {
+  if (receipt.session != reader.header().session) fail_other_message(name);
   if (receipt.code != code_sha256(code) || receipt.block_length != code.block_length().bits() ||
       receipt.frozen_count != code.frozen.frozen_count() || receipt.check_bits != code.check_bits) {
     throw InputError("receipt '" + name + "' was made with another design");
@@ -151,7 +189,7 @@ SettleSummary settle(const Code& code, const KeySource& key, ByteSource& message
   MessageReader reader(message, code);
   require_same_length(key, reader.header(), message.name());
   require_a_block(key, code.block_length());
-  require_belongs(receipt, reader, read_through(reader), code, std::string(receipt_name));
+  require_belongs(receipt, reader, code, std::string(receipt_name));
 
   const Cut& cut = reader.cut();
   const std::size_t bits = code.block_length().bits();
@@ -161,7 +199,9 @@ SettleSummary settle(const Code& code, const KeySource& key, ByteSource& message
   verdict.test_only = receipt.test_only;
   verdict.receipt = sha256(receipt_text);
   // Two passes over the key, so that no group has to wait in memory for its tag.
-  verdict.group_kept = agreeing_groups(key, cut, receipt, RunControl{{}, control.stop});
+  FirstPass first = check_tags(code, key, reader, message.name(), receipt, {{}, control.stop});
+  if (receipt.message != first.message) fail_other_message(std::string(receipt_name));
+  verdict.group_kept = std::move(first.agree);
   for_accepted_blocks(
       key, cut, kept_blocks(receipt, verdict.group_kept), control,
       [&](std::uint64_t, Span<const std::uint8_t> block) { settled.write_packed(block); });

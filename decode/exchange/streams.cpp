@@ -122,7 +122,7 @@ std::string read_file(const std::string& path) {
 }
 
 FileSink::FileSink(std::string path, FileAccess access, FileReplace replace)
-    : path_(std::move(path)), target_(behind_links(path_)), replace_(replace) {
+    : path_(std::move(path)), target_(behind_links(path_)), access_(access), replace_(replace) {
   if (const std::optional<int> own = own_descriptor(path_)) {
     descriptor_ = ::fcntl(*own, F_DUPFD_CLOEXEC, 0);
     if (descriptor_ < 0) fail(errno);
@@ -176,11 +176,33 @@ void FileSink::flush() {
   buffer_.clear();
 }
 
+namespace {
+
+// Makes a new name in the folder of a file last, where the file system can. Returns false, with
+// errno set, when it fails.
+bool synchronize_folder(const std::string& path) {
+  const std::size_t slash = path.find_last_of('/');
+  const std::string folder = slash == std::string::npos ? "." : path.substr(0, slash + 1);
+  const int descriptor = ::open(folder.c_str(), O_RDONLY | O_DIRECTORY | O_CLOEXEC);
+  // A folder that may be written but not read, or one that cannot be synchronized: nothing to do.
+  if (descriptor < 0) return errno == EACCES;
+  const bool done = ::fsync(descriptor) == 0 || errno == EINVAL || errno == ENOTSUP;
+  const int error = errno;
+  ::close(descriptor);
+  errno = error;
+  return done;
+}
+
+}  // namespace
+
 void FileSink::finish() {
   if (descriptor_ < 0) return;
   flush();
+  const bool synchronized = temporary_.empty() || !lasts() || ::fsync(descriptor_) == 0;
+  const int sync_error = errno;
   const int closed = ::close(descriptor_);
   descriptor_ = -1;
+  if (!synchronized) fail(sync_error);
   if (closed != 0) fail(errno);
 }
 
@@ -193,6 +215,7 @@ void FileSink::commit() {
     fail(errno);
   }
   temporary_.clear();
+  if (lasts() && !synchronize_folder(target_)) fail(errno);
 }
 
 }  // namespace frostline

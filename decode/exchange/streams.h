@@ -1,8 +1,9 @@
 // Streams of bytes that the exchange reads and writes, and the files behind them.
 //
 // Output files appear whole or not at all: they are written under a temporary name beside the
-// target and renamed by commit(). What is not a regular file (a pipe, /dev/stdout) is written
-// straight. Every failed call of the operating system is an InputError that names the file.
+// target and renamed by commit(). What is not a regular file (a pipe,
+// /dev/stdout) is written straight. Every failed call of the operating system is an InputError that
+// names the file.
 #pragma once
 
 #include <cstdint>
@@ -76,7 +77,9 @@ class FileSource : public ByteSource {
 // The whole contents of a file that holds no key. Throws InputError when it is longer than 1 GiB.
 std::string read_file(const std::string& path);
 
-enum class FileAccess { normal, secret };  // secret: mode 0600
+// secret: mode 0600. exchanged and secret files are on the disk before they have their name: after
+// a crash they are there whole, or not at all.
+enum class FileAccess { normal, exchanged, secret };
 enum class FileReplace { allowed, refuse_if_there };
 
 class FileSink : public ByteSink {
@@ -100,11 +103,13 @@ class FileSink : public ByteSink {
 
  private:
   void flush();
+  bool lasts() const { return access_ != FileAccess::normal; }
   [[noreturn]] void fail(int error) const;
 
   std::string path_;       // as the user calls it
   std::string target_;     // behind symbolic links
   std::string temporary_;  // empty where the target is written straight
+  FileAccess access_;
   FileReplace replace_;
   int descriptor_ = -1;
   KeyBytes buffer_;

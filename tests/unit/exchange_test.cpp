@@ -109,6 +109,27 @@ TEST_F(Exchange, SettlesEqualKeys) {
   EXPECT_DOUBLE_EQ(settled.epsilon_correctness, received.epsilon_correctness);
 }
 
+// Any key but the one that the message was made of is found out before a bit is written.
+TEST_F(Exchange, SettleRefusesAnotherKey) {
+  const ReconcileSummary received = run_reconcile(no_errors);
+  BitString bits(key_.bits());
+  key_.read(0, bits.size(), bits.words());
+  bits.flip(kLength * 7 + 5);
+  const MemoryKey other(std::move(bits), "other");
+  MemorySource message(message_, "message");
+  MemorySink out;
+  KeySink keys(out, KeyFormat::packed);
+  try {
+    settle(design_.code, other, message, receipt_to_json(received.receipt), "receipt", keys);
+    FAIL() << "settled another key";
+  } catch (const InputError& error) {
+    EXPECT_STREQ(error.what(),
+                 "message 'message' was not made of key 'other': block 5 or one of the next has "
+                 "another syndrome");
+  }
+  EXPECT_TRUE(out.bytes().empty());
+}
+
 // The undetected error: a block recovered wrongly whose check bits agree. Only the tag stands
 // between it and two different keys.
 TEST_F(Exchange, AWrongBlockThatFoolsTheCheckBitsCostsItsGroup) {
