@@ -390,33 +390,26 @@ TEST(MainJob, EachGroupHasAHashKeyOfItsOwn) {
   EXPECT_NE(first.receipt.at("session"), second.receipt.at("session"));
 }
 
-TEST(MainJob, DropsExactlyTheGroupWhoseTagDisagrees) {
+TEST(MainJob, SettleRefusesAKeyThatTheMessageWasNotMadeOf) {
   const Folder folder;
   WholeJob job;
   job.key_bits = 1024 * 20;
   job.lanes = 1;
-  job.goal = {"--fer", "1e-6"};
   run_to_message(folder, job);
-  // One bit of block 7, after the message: the receiver corrects towards what the sender had.
-  std::string key = folder.read("a.key");
-  key[7 * 128 + 50] = static_cast<char>(key[7 * 128 + 50] ^ 4);
-  folder.write("a.key", key);
   ASSERT_EQ(run_command(folder, {"reconcile", "link.design.json", "b.key", "a.syn", "-o",
-                                 "b.provisional", "--receipt", "receipt.json", "--group", "4096"})
+                                 "b.provisional", "--receipt", "receipt.json"})
                 .status,
             0);
+  std::string key = folder.read("a.key");
+  key[7 * 128 + 50] = static_cast<char>(key[7 * 128 + 50] ^ 4);
+  folder.write("other.key", key);
   const CommandResult settle =
-      run_command(folder, {"settle", "link.design.json", "a.key", "a.syn", "receipt.json", "-o",
+      run_command(folder, {"settle", "link.design.json", "other.key", "a.syn", "receipt.json", "-o",
                            "a.settled", "--verdict", "verdict.json"});
-  EXPECT_EQ(settle.status, 1);
-  EXPECT_NE(settle.out.find("1 group of 5 rejected whole"), std::string::npos) << settle.out;
-  EXPECT_EQ(Json::parse(folder.read("verdict.json")).at("kept_bits"), "10111");
-  const CommandResult confirm = run_command(
-      folder, {"confirm", "b.provisional", "receipt.json", "verdict.json", "-o", "b.settled"});
-  EXPECT_EQ(confirm.status, 1);
-  // With one lane block b is the key's bytes 128 b .. 128 b + 127; group 1 holds blocks 4 to 7.
-  EXPECT_EQ(folder.read("a.settled"), key.substr(0, 4 * 128) + key.substr(8 * 128));
-  EXPECT_EQ(folder.read("b.settled"), folder.read("a.settled"));
+  EXPECT_EQ(settle.status, 2);
+  EXPECT_NE(settle.err.find("was not made of key 'other.key'"), std::string::npos) << settle.err;
+  EXPECT_FALSE(folder.holds("a.settled"));
+  EXPECT_FALSE(folder.holds("verdict.json"));
 }
 
 // ---------------------------------------------------------------- files
