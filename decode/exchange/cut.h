@@ -13,8 +13,8 @@
 namespace frostline {
 
 // The default B: a table of N, never of the machine, chosen so that a batch stays in the
-// second-level cache: 512 up to N = 2^12, then halved with each doubling down to 64 at 2^15;
-// 64 at 2^16, 32 up to 2^18, 16 up to 2^21, 8 above.
+// second-level cache: 256 up to N = 2^12, 128 up to 2^14, 64 up to 2^16, 32 up to 2^18, 16 up to
+// 2^21, 8 above.
 unsigned default_lanes(BlockLength block_length);
 
 // Throws InputError unless lanes is a power of two from 1 to 512.
