@@ -176,9 +176,8 @@ TEST(FastListDecoder, DecodesABlockAlikeWhereverItIsDecoded) {
   }
 }
 
-// With at most log2 L open indices every word of the code is on the list, and the best of them is
-// the likeliest where metrics are exact: a frozen set whose open indices are the last ones makes
-// all messages sums of channel messages, and at small N none saturates a metric.
+// With at most log2 L open indices every word of the code is on the list, so that the check bits
+// pick the one that was sent.
 TEST(FastListDecoder, FullListHoldsTheWordThatWasSent) {
   Generator generator(4);
   for (const std::size_t bits : {8, 16}) {
