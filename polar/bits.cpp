@@ -20,12 +20,13 @@ namespace internal {
 
 void* allocate_aligned(std::size_t bytes) {
   if (bytes > std::numeric_limits<std::size_t>::max() / 4) throw std::bad_alloc();
-  const std::size_t rounded = (bytes + 63) / 64 * 64;
   // Decoders walk megabytes in strides; huge pages spare them the misses of the address
   // translation.
   constexpr std::size_t kHugePage = std::size_t{1} << 21;
-  const bool huge = rounded >= kHugePage;
-  void* memory = std::aligned_alloc(huge ? kHugePage : 64, rounded == 0 ? 64 : rounded);
+  const bool huge = bytes >= kHugePage;
+  const std::size_t alignment = huge ? kHugePage : 64;
+  const std::size_t rounded = (bytes + alignment - 1) / alignment * alignment;
+  void* memory = std::aligned_alloc(alignment, rounded == 0 ? 64 : rounded);
   if (memory == nullptr) throw std::bad_alloc();
 #ifdef MADV_HUGEPAGE
   // A hint: where the system has none to give, small pages serve.
