@@ -2,6 +2,7 @@
 
 #include "cli/account.h"
 #include "cli/grid.h"
+#include "decode/hardware/message_dump.h"
 #include "polar/error.h"
 
 namespace frostline::cli {
@@ -62,16 +63,9 @@ void add_hardware_options(Options& options) {
       .value("sorter", "NAME", "of path metrics: full or pruned (full)");
 }
 
+// Exact messages are not stored: 6 bits are what hardware takes for them.
 unsigned message_bits(const Arithmetic& arithmetic) {
-  switch (arithmetic.kind) {
-    case Arithmetic::Kind::planes:
-      return arithmetic.planes + 1;
-    case Arithmetic::Kind::integer:
-      return arithmetic.llr_bits;
-    case Arithmetic::Kind::exact:
-      break;
-  }
-  return 6;
+  return arithmetic.kind == Arithmetic::Kind::exact ? 6 : stored_message_bits(arithmetic);
 }
 
 HardwareChoice hardware_choice(const Options& options, const Design& design) {

@@ -86,9 +86,17 @@ void require_plot(const std::string& path) {
 
 void draw(const std::string& path, const std::vector<Diagram>& diagrams) {
   require_plot(path);
-  char folder[] = "/tmp/frostline-plot-XXXXXX";
-  if (::mkdtemp(folder) == nullptr) throw InputError("cannot make a folder in /tmp");
-  const std::string picture = std::string(folder) + "/picture";
+  // mkdtemp puts six characters of its own in the place of the X.
+  std::error_code unusable;
+  const std::filesystem::path temporary = std::filesystem::temp_directory_path(unusable);
+  if (unusable) {
+    throw InputError("cannot draw '" + path + "': no folder for temporary files (TMPDIR)");
+  }
+  std::string folder = (temporary / "frostline-plot-XXXXXX").string();
+  if (::mkdtemp(folder.data()) == nullptr) {
+    throw InputError("cannot make a folder in '" + temporary.string() + "'");
+  }
+  const std::string picture = folder + "/picture";
   std::string problem;
   std::FILE* pipe = ::popen("gnuplot 2>/dev/null", "w");
   if (pipe == nullptr) {

@@ -38,43 +38,38 @@ struct Bits {
   hn::Vec<PartTag<kBits>> part[kParts<kBits>];
 };
 
+// each(i) for every part.
+template <unsigned k, typename Each>
+HWY_INLINE Bits<k> OfParts(Each&& each) {
+  Bits<k> out;
+  for (unsigned i = 0; i < kParts<k>; ++i) out.part[i] = each(i);
+  return out;
+}
+
 template <int kTable, unsigned k>
 HWY_INLINE Bits<k> Ternary(Bits<k> a, Bits<k> b, Bits<k> c) {
-  Bits<k> out;
-  for (unsigned i = 0; i < kParts<k>; ++i) {
-    out.part[i] = Ternary<kTable>(a.part[i], b.part[i], c.part[i]);
-  }
-  return out;
+  return OfParts<k>([&](unsigned i)
+                        HWY_ATTR { return Ternary<kTable>(a.part[i], b.part[i], c.part[i]); });
 }
 template <unsigned k>
 HWY_INLINE Bits<k> And(Bits<k> a, Bits<k> b) {
-  Bits<k> out;
-  for (unsigned i = 0; i < kParts<k>; ++i) out.part[i] = hn::And(a.part[i], b.part[i]);
-  return out;
+  return OfParts<k>([&](unsigned i) HWY_ATTR { return hn::And(a.part[i], b.part[i]); });
 }
 template <unsigned k>
 HWY_INLINE Bits<k> Xor(Bits<k> a, Bits<k> b) {
-  Bits<k> out;
-  for (unsigned i = 0; i < kParts<k>; ++i) out.part[i] = hn::Xor(a.part[i], b.part[i]);
-  return out;
+  return OfParts<k>([&](unsigned i) HWY_ATTR { return hn::Xor(a.part[i], b.part[i]); });
 }
 template <unsigned k>
 HWY_INLINE Bits<k> AndNot(Bits<k> not_a, Bits<k> b) {
-  Bits<k> out;
-  for (unsigned i = 0; i < kParts<k>; ++i) out.part[i] = hn::AndNot(not_a.part[i], b.part[i]);
-  return out;
+  return OfParts<k>([&](unsigned i) HWY_ATTR { return hn::AndNot(not_a.part[i], b.part[i]); });
 }
 template <unsigned k>
 HWY_INLINE Bits<k> Not(Bits<k> a) {
-  Bits<k> out;
-  for (unsigned i = 0; i < kParts<k>; ++i) out.part[i] = hn::Not(a.part[i]);
-  return out;
+  return OfParts<k>([&](unsigned i) HWY_ATTR { return hn::Not(a.part[i]); });
 }
 template <unsigned k>
 HWY_INLINE Bits<k> Zeros() {
-  Bits<k> out;
-  for (unsigned i = 0; i < kParts<k>; ++i) out.part[i] = hn::Zero(PartTag<k>());
-  return out;
+  return OfParts<k>([](unsigned) HWY_ATTR { return hn::Zero(PartTag<k>()); });
 }
 
 // words: aligned like a vector where k is at least 64.

@@ -3,6 +3,7 @@
 
 #include <algorithm>
 #include <cmath>
+#include <cstdlib>
 #include <cstring>
 #include <vector>
 
@@ -12,11 +13,20 @@
 #include "decode/reference/successive_cancellation.h"
 #include "polar/lanes.h"
 #include "polar/random.h"
+#include "polar/simd.h"
 #include "polar/syndrome.h"
 #include "tests/bench/textbook_sc.h"
 
 namespace frostline {
 namespace {
+
+// FROSTLINE_SIMD forces a vector set here as it does for the command.
+const bool kForced = [] {
+  const char* const name = std::getenv("FROSTLINE_SIMD");
+  if (name == nullptr || *name == '\0') return false;
+  force_simd(name);
+  return true;
+}();
 
 struct Setup {
   Code code;
@@ -112,6 +122,7 @@ void ReceiverOfDesign(benchmark::State& state) {
     benchmark::ClobberMemory();
   }
   report(state, setup.difference.size() * 64);
+  if (kForced) state.SetLabel(simd_in_use());
 }
 BENCHMARK(ReceiverOfDesign)->Apply(grid);
 

@@ -20,6 +20,7 @@ namespace frostline::testing {
 class Folder {
  public:
   Folder() {
+    // mkdtemp puts six characters of its own in the place of the X.
     std::string pattern =
         (std::filesystem::temp_directory_path() / "frostline-test-XXXXXX").string();
     if (::mkdtemp(pattern.data()) == nullptr) {
